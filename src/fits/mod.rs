@@ -1,0 +1,26 @@
+//! Fits: estimates become [`Quantity`] values, one fit per file.
+//!
+//! To add a fit: one new file that implements [`Fit`], one `mod` line and one row in [`registry`].
+
+mod outcome;
+mod quantity;
+
+pub use outcome::{AreaCurve, Covariance, FitOptions, Fitted, PlateCurve, PlateModel};
+pub use quantity::{Condition, FittedValue, NORMAL_95, Quantity, Verdict};
+
+use crate::estimates::SheetEstimates;
+
+/// A fit over the runs of one sheet.
+pub trait Fit: Sync {
+    /// Short name, unique in the registry, for messages and documentation.
+    fn name(&self) -> &'static str;
+
+    /// Fits one sheet. What the data cannot carry comes back as a quantity without a value, never as an error.
+    fn fit(&self, sheet: &SheetEstimates, options: &FitOptions) -> Fitted;
+}
+
+/// Every fit, in the order in which their quantities are written.
+#[must_use]
+pub fn registry() -> Vec<Box<dyn Fit>> {
+    vec![]
+}

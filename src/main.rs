@@ -1,0 +1,3 @@
+//! The `planish` binary: parse, call, exit status.
+
+fn main() {}

@@ -1,0 +1,1 @@
+//! Named numerical algorithms, each with an oracle test.

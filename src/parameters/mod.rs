@@ -1,0 +1,1 @@
+//! The parameter file: records, provenance, covariance, as TOML and JSON.

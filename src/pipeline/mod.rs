@@ -1,0 +1,1 @@
+//! The pipeline file as written, the plan as resolved, and the run itself.

@@ -1,0 +1,1 @@
+//! Series algorithms: numbers in, numbers out.
