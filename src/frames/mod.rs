@@ -8,7 +8,7 @@ mod frame;
 mod run_input;
 mod source;
 
-pub use cell::{Cell, CellAxis};
+pub use cell::{Cell, CellAxis, cross, dot, length};
 pub use error::FrameError;
 pub use frame::{Frame, SheetAtoms};
 pub use run_input::{Clock, EngineUnits, RunInput};
