@@ -17,7 +17,23 @@ pub struct Series {
     pub values: Array2<f64>,
 }
 
-/// Sums over the frames of a block, one entry per mode.
+impl Series {
+    /// A series from its values row by row.
+    ///
+    /// # Panics
+    /// Where the values are not whole rows: a measurement's own mistake.
+    #[must_use]
+    pub fn from_rows(columns: &[&str], values: Vec<f64>) -> Self {
+        let shape = (values.len() / columns.len(), columns.len());
+        let values = Array2::from_shape_vec(shape, values).expect("a measurement pushes whole rows");
+        Self {
+            columns: columns.iter().map(|&c| c.to_owned()).collect(),
+            values,
+        }
+    }
+}
+
+/// Sums over the frames of a block, one entry per mode that keeps no series of its own.
 #[derive(Clone, Debug, PartialEq)]
 pub struct ModeSums {
     /// Sum of h, in A.
@@ -28,6 +44,19 @@ pub struct ModeSums {
     pub power_squared: Vec<f64>,
     /// Sums of conj(h(t)) h(t + k) over the pairs within the block, one vector for each lag of [`LAGS`], in A^2.
     pub lagged: [Vec<Complex64>; 4],
+}
+
+impl ModeSums {
+    /// Sums over no frame, for this many modes.
+    #[must_use]
+    pub fn zero(modes: usize) -> Self {
+        Self {
+            height: vec![Complex64::default(); modes],
+            power: vec![0.0; modes],
+            power_squared: vec![0.0; modes],
+            lagged: std::array::from_fn(|_| vec![Complex64::default(); modes]),
+        }
+    }
 }
 
 /// What one measurement leaves of one block.
