@@ -10,7 +10,7 @@ const QUADRATURE_NODES: usize = 60;
 
 /// The kernel exp(beta (sqrt(1 - z^2) - 1)) on |z| <= 1, zero outside, stretched over `width` grid cells.
 ///
-/// Barnett, Magland and af Klinteberg, SIAM J. Sci. Comput. 41, C479 (2019), eqs. (1.8) and (3.3): beta = 2.30 w at twofold
+/// Barnett, Magland and af Klinteberg, SIAM J. Sci. Comput. 41, C479 (2019): beta = 2.30 w at twofold
 /// upsampling; the error falls by about ten for each cell of width.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Kernel {
