@@ -24,6 +24,7 @@ step() {
 
 # The tests that ask numpy find it here; with this set they fail rather than skip.
 export PLANISH_ORACLE_PYTHON="$build/python-oracle/bin/python"
+export PYTHONDONTWRITEBYTECODE=1
 test_log=$(mktemp)
 trap 'rm -f "$test_log"' EXIT
 tests() {
@@ -35,7 +36,7 @@ scripts() {
     for script in .ci/run pipelines/*.sh tests/*.sh; do
         bash -n "$script"
     done
-    "$PLANISH_ORACLE_PYTHON" -m compileall -q tests/oracles
+    PYTHONPYCACHEPREFIX="$build/python-cache" "$PLANISH_ORACLE_PYTHON" -m compileall -q tests/oracles
 }
 documentation() {
     RUSTDOCFLAGS="-D warnings" cargo doc --release --locked --no-deps
