@@ -11,7 +11,7 @@ echo "demo: building planish (the first build also compiles the trajectory libra
 cargo build --release --locked
 
 status=0
-"$(build_folder)/release/planish" run pipelines/drumhead.toml "$@" || status=$?
+cargo run --release --locked --quiet -- run pipelines/drumhead.toml "$@" || status=$?
 if [ "$status" -eq 0 ]; then
     echo
     echo "demo: unless --out moved them, the results are in pipelines/drumhead.out: start with parameters.toml and figures/"

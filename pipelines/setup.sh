@@ -46,9 +46,9 @@ set_up_build() {
     require_packages "${missing[@]}"
 }
 
-# Where cargo puts what it builds; a CARGO_TARGET_DIR that is set already is kept.
+# Where cargo puts what it builds, as CARGO_TARGET_DIR or cargo's configuration say.
 build_folder() {
-    printf '%s\n' "${CARGO_TARGET_DIR:-target}"
+    cargo metadata --format-version 1 --no-deps --locked --offline | sed -n 's/.*"target_directory":"\([^"]*\)".*/\1/p'
 }
 
 # set_up_python FOLDER REQUIREMENTS: a Python environment with exactly the packages of the requirements file.

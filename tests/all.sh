@@ -9,8 +9,8 @@ source pipelines/setup.sh
 set_up_build
 cargo fmt --version >/dev/null 2>&1 && cargo clippy --version >/dev/null 2>&1 ||
     stop "rustfmt or clippy is missing; run this, then start again:" "    rustup component add rustfmt clippy"
-mkdir -p "$(build_folder)"
-build=$(cd "$(build_folder)" && pwd)
+build=$(build_folder)
+mkdir -p "$build"
 set_up_python "$build/python-oracle" tests/oracles/requirements.txt
 
 steps=0
