@@ -1,6 +1,4 @@
-//! Physical constants, the program's unit system, and quantities written with their unit.
-//!
-//! Inside the program lengths are in A, energies in eV, times in ps, temperatures in K, masses in g/mol.
+//! Physical constants in the program's units.
 
 /// Boltzmann's constant in eV/K (CODATA 2018, exact in the SI of 2019).
 pub const BOLTZMANN_EV_PER_K: f64 = 8.617_333_262e-5;
