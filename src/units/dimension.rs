@@ -231,6 +231,17 @@ impl Dimension {
         }
     }
 
+    /// One of `unit` in the program's unit.
+    ///
+    /// # Panics
+    /// Where `unit` is not one of this dimension's: it is the caller's constant, not input.
+    #[must_use]
+    pub fn one(self, unit: &str) -> f64 {
+        self.find(unit)
+            .expect("the wanted unit belongs to the dimension")
+            .factor
+    }
+
     /// The unit that `spelling` means in this dimension, if it is taken.
     pub(super) fn find(self, spelling: &str) -> Option<&'static Unit> {
         self.units()

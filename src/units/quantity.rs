@@ -134,13 +134,9 @@ impl Dimension {
     /// As [`Dimension::parse`].
     ///
     /// # Panics
-    /// Where `unit` is not one of this dimension's: it is the caller's constant, not input.
+    /// As [`Dimension::one`].
     pub fn parse_in(self, text: &str, unit: &str) -> Result<f64, QuantityError> {
-        let factor = self
-            .find(unit)
-            .expect("the wanted unit belongs to the dimension")
-            .factor;
-        self.parse(text).map(|value| value / factor)
+        self.parse(text).map(|value| value / self.one(unit))
     }
 
     /// Why `unit`, which is none of this dimension's, is refused.

@@ -1,0 +1,201 @@
+//! `[gate]`: limits that the parameters must meet.
+
+use serde::Serialize;
+use toml::Spanned;
+use toml::de::{DeTable, DeValue};
+
+use super::diagnostics::{Diagnostic, Diagnostics};
+use super::keys::{Bound, GATE_LIMIT, Kind};
+use super::table_reader::{TableReader, nearest};
+use crate::fits::Verdict;
+use crate::units::Dimension;
+
+/// What every value of one parameter must meet.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct GateLimit {
+    /// Name of the parameter.
+    pub parameter: String,
+    /// Smallest value allowed, in the parameter's unit.
+    pub min: Option<f64>,
+    /// Largest value allowed, in the parameter's unit.
+    pub max: Option<f64>,
+    /// Largest standard error allowed.
+    pub max_error: Option<ErrorLimit>,
+    /// Worst verdict allowed.
+    pub verdict: Option<Verdict>,
+}
+
+/// The largest standard error a gate allows.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize)]
+#[serde(rename_all = "lowercase")]
+pub enum ErrorLimit {
+    /// In the parameter's unit.
+    Absolute(f64),
+    /// As a share of the value.
+    Relative(f64),
+}
+
+/// Names that a gate may limit, with the unit of each.
+///
+/// To be replaced by the registry of parameter names when both are in one tree; [`unit_of`] and [`names`] are the only
+/// readers.
+const PARAMETERS: &[(&str, &str)] = &[
+    ("bending_rigidity", "eV"),
+    ("bending_rigidity_bare", "eV"),
+    ("bending_rigidity_bare_slope", "eV/K"),
+    ("lattice_term", "A^2"),
+    ("youngs_modulus", "N/m"),
+    ("bulk_modulus", "N/m"),
+    ("shear_modulus", "N/m"),
+    ("youngs_modulus_bare", "N/m"),
+    ("youngs_modulus_bare_slope", "N/m/K"),
+    ("poisson_ratio", "1"),
+    ("poisson_ratio_bare", "1"),
+    ("stiffness_11", "N/m"),
+    ("stiffness_22", "N/m"),
+    ("stiffness_12", "N/m"),
+    ("stiffness_66", "N/m"),
+    ("stiffness_16", "N/m"),
+    ("stiffness_26", "N/m"),
+    ("area_per_atom", "A^2"),
+    ("excess_area", "1"),
+    ("rms_slope", "1"),
+    ("normal_order", "1"),
+    ("thermal_expansion", "1/K"),
+    ("tension", "N/m"),
+    ("areal_density", "kg/m^2"),
+    ("thermal_length", "A"),
+    ("crossover_tension", "N/m"),
+    ("foppl_von_karman", "1"),
+    ("scaling_exponent_eta", "1"),
+    ("scaling_exponent_eta_u", "1"),
+    ("stress_exponent", "1"),
+];
+
+/// The unit in which a parameter of this name is written; `None` for no known name.
+fn unit_of(name: &str) -> Option<&'static str> {
+    PARAMETERS.iter().find(|row| row.0 == name).map(|row| row.1)
+}
+
+/// Every name that a gate may limit.
+fn names() -> Vec<&'static str> {
+    PARAMETERS.iter().map(|row| row.0).collect()
+}
+
+/// Reads `[gate]`, in the order of the file.
+pub(super) fn read_gate(table: &DeTable<'_>, problems: &mut Diagnostics) -> Vec<GateLimit> {
+    let mut entries: Vec<_> = table.iter().collect();
+    entries.sort_by_key(|(key, _)| key.span().start);
+    entries
+        .into_iter()
+        .filter_map(|(key, value)| read_limit(key, value, problems))
+        .collect()
+}
+
+fn read_limit(
+    key: &Spanned<impl AsRef<str>>,
+    value: &Spanned<DeValue<'_>>,
+    problems: &mut Diagnostics,
+) -> Option<GateLimit> {
+    let parameter = key.get_ref().as_ref();
+    let Some(unit) = unit_of(parameter) else {
+        let known = names();
+        let nearest = nearest(parameter, &known);
+        problems.push(
+            Diagnostic::error(format!("`{parameter}` is no parameter"))
+                .at(
+                    key.span(),
+                    nearest.map_or(String::new(), |known| format!("did you mean `{known}`?")),
+                )
+                .help(format!("a gate limits one of {}", known.join(", "))),
+        );
+        return None;
+    };
+    let DeValue::Table(table) = value.get_ref() else {
+        let dimension = Dimension::of_unit(unit)?;
+        problems.push(
+            Diagnostic::error(format!("the gate of `{parameter}` is no table"))
+                .at(
+                    value.span(),
+                    "expected a table with min, max, max_error or verdict",
+                )
+                .help(format!(
+                    "write {parameter} = {{ max = \"{}\" }}",
+                    dimension.example()
+                )),
+        );
+        return None;
+    };
+    let mut reader = TableReader::new(table, value.span(), &GATE_LIMIT, problems);
+    let limit = GateLimit {
+        parameter: parameter.to_owned(),
+        min: read_value(&mut reader, "min", unit),
+        max: read_value(&mut reader, "max", unit),
+        max_error: read_error(&mut reader, unit),
+        verdict: reader
+            .choice("verdict", |word| match word {
+                "good" => Some(Verdict::Good),
+                "weak" => Some(Verdict::Weak),
+                _ => None,
+            })
+            .map(|verdict| verdict.value),
+    };
+    if table.is_empty() {
+        problems.push(
+            Diagnostic::error(format!("the gate of `{parameter}` has no limit"))
+                .at(value.span(), "expected min, max, max_error or verdict")
+                .help("a gate without a limit is always met: add one, or remove the line"),
+        );
+    }
+    if let (Some(min), Some(max)) = (limit.min, limit.max)
+        && min > max
+    {
+        problems.push(
+            Diagnostic::error(format!(
+                "the gate of `{parameter}` can never be met: min is above max"
+            ))
+            .at(value.span(), "expected min below max")
+            .help("exchange min and max"),
+        );
+    }
+    Some(limit)
+}
+
+/// A limit in the parameter's unit.
+fn read_value(reader: &mut TableReader<'_, '_>, name: &str, unit: &str) -> Option<f64> {
+    let (key, value) = reader.value(name)?;
+    debug_assert!(matches!(key.kind, Kind::Limit), "{name} is declared as a limit");
+    let dimension = Dimension::of_unit(unit).expect("every parameter's unit has a dimension");
+    let inside = reader.quantity_of(name, dimension, Bound::Any, value)?;
+    Some(inside.value / dimension.one(unit))
+}
+
+/// A limit of the error: a percentage of the value, or in the parameter's unit.
+fn read_error(reader: &mut TableReader<'_, '_>, unit: &str) -> Option<ErrorLimit> {
+    let (_, value) = reader.value("max_error")?;
+    if let DeValue::String(text) = value.get_ref()
+        && text.trim_end().ends_with('%')
+    {
+        return reader
+            .quantity_of("max_error", Dimension::Number, Bound::Positive, value)
+            .map(|share| ErrorLimit::Relative(share.value));
+    }
+    let dimension = Dimension::of_unit(unit).expect("every parameter's unit has a dimension");
+    reader
+        .quantity_of("max_error", dimension, Bound::Positive, value)
+        .map(|error| ErrorLimit::Absolute(error.value / dimension.one(unit)))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{PARAMETERS, unit_of};
+    use crate::units::Dimension;
+
+    #[test]
+    fn every_parameter_has_a_dimension() {
+        for (name, unit) in PARAMETERS {
+            assert_eq!(unit_of(name), Some(*unit));
+            assert!(Dimension::of_unit(unit).is_some(), "{name} in {unit}");
+        }
+    }
+}
