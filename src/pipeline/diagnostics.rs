@@ -4,7 +4,7 @@ use std::fmt;
 use std::ops::Range;
 use std::path::{Path, PathBuf};
 
-use annotate_snippets::{AnnotationKind, Group, Level, Renderer, Snippet};
+use annotate_snippets::{Annotation, AnnotationKind, Group, Level, Renderer, Snippet};
 
 /// Whether a diagnostic stops the job.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -171,7 +171,7 @@ impl Diagnostics {
         let mut group = match &item.span {
             None => level
                 .primary_title(format!("{path}: {}", item.message))
-                .elements(Option::<Snippet<'_, annotate_snippets::Annotation<'_>>>::None),
+                .elements(Option::<Snippet<'_, Annotation<'_>>>::None),
             Some(span) => {
                 let place = AnnotationKind::Primary.span(self.within(span));
                 let place = if item.label.is_empty() {

@@ -107,12 +107,14 @@ fn read_limit(
                     key.span(),
                     nearest.map_or(String::new(), |known| format!("did you mean `{known}`?")),
                 )
-                .help(format!("a gate limits one of {}", known.join(", "))),
+                .help(match nearest {
+                    Some(nearest) => format!("write {nearest} = {{ max_error = \"5 %\" }}, for example"),
+                    None => format!("a gate limits one of {}", known.join(", ")),
+                }),
         );
         return None;
     };
     let DeValue::Table(table) = value.get_ref() else {
-        let dimension = Dimension::of_unit(unit)?;
         problems.push(
             Diagnostic::error(format!("the gate of `{parameter}` is no table"))
                 .at(

@@ -150,7 +150,7 @@ pub static PIPELINE: TableKeys = TableKeys {
     keys: &[required(
         "name",
         Kind::Name,
-        "name of the job, and of its output folder",
+        "what the job and its output folder are called",
     )],
 };
 
@@ -159,7 +159,7 @@ pub static SHEET: TableKeys = TableKeys {
     header: "[[sheet]]",
     doc: "One material under one interatomic potential",
     keys: &[
-        required("name", Kind::Name, "name of the sheet, unique in the file"),
+        required("name", Kind::Name, "what the sheet is called, unique in the file"),
         optional(
             "select",
             Kind::Text,
@@ -185,7 +185,7 @@ pub static RUN: TableKeys = TableKeys {
             "name",
             Kind::Name,
             "the first file's stem",
-            "name of the run, unique in its sheet",
+            "what the run is called, unique in its sheet",
         ),
         required(
             "trajectory",
@@ -344,7 +344,7 @@ pub static FIT: TableKeys = TableKeys {
             "plate",
             Kind::Choice(&["rippled", "harmonic"]),
             "rippled",
-            "plate model: stiffened by its thermal ripples, or harmonic",
+            "whether the fitted plate is stiffened by its thermal ripples, or harmonic",
         ),
         optional(
             "window",

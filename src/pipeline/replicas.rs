@@ -80,10 +80,7 @@ fn different(
             "only runs of the same conditions are pooled: correct the {what}, or remove `replica_of`"
         ));
     match place {
-        Some(place) => refused.related(
-            place.span.clone(),
-            format!("a {what} that the other does not state"),
-        ),
+        Some(place) => refused.related(place.span.clone(), "one of the two is stated here"),
         None => refused,
     }
 }

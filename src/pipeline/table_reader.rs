@@ -98,7 +98,9 @@ impl<'t, 'p> TableReader<'t, 'p> {
         match value.get_ref() {
             DeValue::Array(items) if items.is_empty() => {
                 self.problems.push(
-                    Diagnostic::error(format!("`{name}` is an empty list")).at(value.span(), expected(key)),
+                    Diagnostic::error(format!("`{name}` is an empty list"))
+                        .at(value.span(), expected(key))
+                        .help(format!("write {}", example(key))),
                 );
                 None
             }
@@ -124,7 +126,7 @@ impl<'t, 'p> TableReader<'t, 'p> {
             self.problems.push(
                 Diagnostic::error(format!("`{}` {problem}", key.name))
                     .at(value.span(), expected(key))
-                    .help(format!("{} is {}", key.name, key.doc)),
+                    .help(format!("{}: {}", key.name, key.doc)),
             );
             return None;
         }
@@ -147,7 +149,7 @@ impl<'t, 'p> TableReader<'t, 'p> {
         self.problems.push(
             Diagnostic::error(format!("`{name}` is {integer}"))
                 .at(value.span(), expected(key))
-                .help(format!("{name} is {}", key.doc)),
+                .help(format!("{name}: {}", key.doc)),
         );
         None
     }
@@ -169,8 +171,8 @@ impl<'t, 'p> TableReader<'t, 'p> {
             return Some(written(choice, value));
         }
         let help = match nearest(word, words) {
-            Some(nearest) => format!("did you mean \"{nearest}\"? {name} is {}", key.doc),
-            None => format!("{name} is {}", key.doc),
+            Some(nearest) => format!("did you mean \"{nearest}\"? {name}: {}", key.doc),
+            None => format!("{name}: {}", key.doc),
         };
         self.problems.push(
             Diagnostic::error(format!("`{name}` is \"{word}\""))
@@ -312,7 +314,7 @@ fn written<T>(value: T, place: &Spanned<DeValue<'_>>) -> Written<T> {
     }
 }
 
-/// The known name that `name` most likely stands for: at most a third of its letters off, or begun and not finished.
+/// The known name that `name` most likely stands for: at most a third of its letters off, or one the beginning of the other.
 pub(super) fn nearest(name: &str, known: &[&'static str]) -> Option<&'static str> {
     let plain = |text: &str| text.to_lowercase().replace(['-', ' '], "_");
     let name = plain(name);
@@ -325,10 +327,9 @@ pub(super) fn nearest(name: &str, known: &[&'static str]) -> Option<&'static str
     if best.len() > 1 && distance(best) <= allowed {
         return Some(best);
     }
-    known
-        .iter()
-        .copied()
-        .find(|candidate| name.len() >= 3 && candidate.starts_with(&name))
+    known.iter().copied().find(|candidate| {
+        name.len().min(candidate.len()) >= 3 && (candidate.starts_with(&name) || name.starts_with(candidate))
+    })
 }
 
 /// The table that does know a key unknown here, or else the keys known here.
@@ -378,10 +379,8 @@ fn with_unit(dimension: Dimension) -> String {
 /// "expected a whole number of at least 1"
 fn expected(key: &Key) -> String {
     let what = match key.kind {
-        Kind::Text => "a text in quotes".to_owned(),
-        Kind::Name => {
-            "a name in quotes, without / and \\, control characters, outer spaces or a leading dot".to_owned()
-        }
+        Kind::Text => "a text in quotes, not empty".to_owned(),
+        Kind::Name => "a name in quotes, without / and \\".to_owned(),
         Kind::Texts => "a list of texts in quotes".to_owned(),
         Kind::Path => "one path in quotes".to_owned(),
         Kind::Paths => "a path or glob in quotes, or a list of them".to_owned(),
