@@ -1,3 +1,7 @@
 //! The `planish` binary: parse, call, exit status.
 
-fn main() {}
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    planish::cli::dispatch(std::env::args_os()).into()
+}
