@@ -45,7 +45,7 @@ pub struct SharedOptions {
     #[arg(long, value_name = "DIR")]
     pub out: Option<PathBuf>,
     /// Number of threads [default: all cores]; the results do not depend on it
-    #[arg(long, value_name = "N")]
+    #[arg(long, value_name = "N", value_parser = thread_count)]
     pub threads: Option<NonZeroUsize>,
     /// Show warnings and errors only
     #[arg(long, short, conflicts_with = "verbose")]
@@ -63,4 +63,9 @@ impl SharedOptions {
             .or_else(|| std::thread::available_parallelism().ok())
             .map_or(1, NonZeroUsize::get)
     }
+}
+
+fn thread_count(text: &str) -> Result<NonZeroUsize, String> {
+    text.parse()
+        .map_err(|_| "expected a whole number, 1 or more".to_owned())
 }

@@ -62,7 +62,7 @@ impl Tally {
     fn line(&self, elapsed: Duration) -> String {
         let (frames, atom_frames) = self.rates(elapsed);
         let left = self.frames_wanted.saturating_sub(self.frames) as f64 / frames.max(1e-9);
-        let mut line = format!(
+        let line = format!(
             "{}: {} of {} frames, {frames:.0} frames/s, {} atom-frames/s",
             self.run,
             self.frames,
@@ -71,9 +71,10 @@ impl Tally {
         );
         if self.frames > 0 && left < 1e9 {
             let left = HumanDuration(Duration::from_secs_f64(left));
-            line.push_str(&format!(", {left} left"));
+            format!("{line}, {left} left")
+        } else {
+            line
         }
-        line
     }
 }
 
@@ -83,7 +84,7 @@ fn with_prefix(rate: f64) -> String {
         rate if rate >= 1e9 => format!("{:.1} G", rate / 1e9),
         rate if rate >= 1e6 => format!("{:.1} M", rate / 1e6),
         rate if rate >= 1e3 => format!("{:.1} k", rate / 1e3),
-        rate => format!("{rate:.0} "),
+        rate => format!("{rate:.0}"),
     }
 }
 
@@ -125,10 +126,10 @@ impl ProgressBar {
 impl Progress for ProgressBar {
     fn run_started(&self, sheet: &str, run: &str, frames: usize) {
         locked(&self.tally).start(sheet, run, frames);
-        self.bar.reset();
         self.bar.set_length(frames as u64);
         self.bar.set_prefix(format!("{sheet}/{run}"));
-        self.bar.set_message("");
+        self.bar.set_message("-");
+        self.bar.reset();
     }
 
     fn frames_done(&self, frames: usize, atoms: usize) {
@@ -137,7 +138,7 @@ impl Progress for ProgressBar {
         let (_, atom_frames) = tally.rates(tally.started.elapsed());
         drop(tally);
         self.bar
-            .set_message(format!("{}atom-frames/s", with_prefix(atom_frames)));
+            .set_message(format!("{} atom-frames/s", with_prefix(atom_frames)));
         self.bar.inc(frames as u64);
     }
 

@@ -218,7 +218,7 @@ fn interval(low: f64, high: f64) -> String {
     }
     // Two digits of a quarter of the width, which is about one standard error.
     let decimals = (1.0 - (0.25 * width).log10().floor()).max(0.0) as usize;
-    if larger >= 1e-3 && larger < 1e5 {
+    if (1e-3..1e5).contains(&larger) {
         format!("{low:.decimals$} to {high:.decimals$}")
     } else {
         format!("{low:.2e} to {high:.2e}")

@@ -1,6 +1,8 @@
 //! The summary table that a user sees at the end of a run.
 
-use comfy_table::{Attribute, Cell, CellAlignment, Color, ContentArrangement, Table, presets};
+use comfy_table::{
+    Attribute, Cell, CellAlignment, Color, ContentArrangement, LineStyle, Table, TableStyle, presets,
+};
 
 use crate::fits::Verdict;
 use crate::parameters::{Parameter, Sheet};
@@ -26,18 +28,24 @@ const RUN_COLUMNS: [(&str, &str); 5] = [
     ("thermal_expansion", "alpha, 1/K"),
 ];
 
+/// Lines above, below and under the heading; none between rows.
+const LINES: TableStyle = presets::UTF8_HORIZONTAL_ONLY.row_separator(LineStyle::none());
+
 /// The summary of one sheet: a row per run, then what belongs to several runs, then the notes of all that is not good.
 #[must_use]
 pub fn summary(sheet: &Sheet, style: SummaryStyle) -> String {
     let mut text = format!("Sheet {}\n", sheet.name);
     text.push_str(&run_table(sheet, style).trim_fmt());
     text.push('\n');
-    let joint: Vec<&Parameter> = sheet.parameter.iter().filter(|one| is_joint(one)).collect();
+    let joint = shared_by_runs(sheet);
     if !joint.is_empty() {
         let mut table = plain_table(style);
         for parameter in joint {
             table.add_row([
-                Cell::new(&parameter.name),
+                Cell::new(match parameter.temperature_K {
+                    Some(temperature) => format!("{} at {temperature} K", parameter.name),
+                    None => parameter.name.clone(),
+                }),
                 verdict_cell(Some(parameter), style),
                 Cell::new(unit_text(&parameter.unit)),
             ]);
@@ -53,10 +61,17 @@ pub fn summary(sheet: &Sheet, style: SummaryStyle) -> String {
 }
 
 fn run_table(sheet: &Sheet, style: SummaryStyle) -> Table {
+    let runs = conditions(sheet);
+    // A parameter that no run has gets no column.
+    let columns: Vec<(&str, &str)> = RUN_COLUMNS
+        .into_iter()
+        .filter(|(name, _)| runs.iter().any(|run| run.find(sheet, name).is_some()))
+        .collect();
     let mut table = plain_table(style);
-    let mut header = vec!["run".to_owned(), "T, K".to_owned(), "L, A".to_owned()];
-    header.extend(RUN_COLUMNS.iter().map(|(_, heading)| (*heading).to_owned()));
-    table.set_header(header.into_iter().map(|heading| {
+    let headings = ["run", "T, K", "L, A"]
+        .into_iter()
+        .chain(columns.iter().map(|(_, heading)| *heading));
+    table.set_header(headings.map(|heading| {
         let cell = Cell::new(heading);
         if style.colour {
             cell.add_attribute(Attribute::Bold)
@@ -64,37 +79,39 @@ fn run_table(sheet: &Sheet, style: SummaryStyle) -> Table {
             cell
         }
     }));
-    for condition in conditions(sheet) {
+    for run in &runs {
+        let length = run
+            .find(sheet, "bending_rigidity")
+            .and_then(|kappa| kappa.length_A);
         let mut row = vec![
-            Cell::new(condition.run),
-            Cell::new(condition.temperature.map_or_else(dash, |t| format!("{t}")))
-                .set_alignment(CellAlignment::Right),
+            Cell::new(run.name),
+            right(run.temperature.map(|temperature| format!("{temperature}"))),
+            right(length.map(|length| format!("{length:.1}"))),
         ];
-        let kappa = condition.find(sheet, "bending_rigidity");
-        let length = kappa.and_then(|one| one.length_A);
-        row.push(
-            Cell::new(length.map_or_else(dash, |l| format!("{l:.1}"))).set_alignment(CellAlignment::Right),
-        );
         row.extend(
-            RUN_COLUMNS
+            columns
                 .iter()
-                .map(|(name, _)| verdict_cell(condition.find(sheet, name), style)),
+                .map(|(name, _)| verdict_cell(run.find(sheet, name), style)),
         );
         table.add_row(row);
     }
     table
 }
 
+fn right(text: Option<String>) -> Cell {
+    Cell::new(text.unwrap_or_else(dash)).set_alignment(CellAlignment::Right)
+}
+
 /// One run as the parameters know it.
 struct RunCondition<'a> {
-    run: &'a str,
+    name: &'a str,
     temperature: Option<f64>,
 }
 
 impl RunCondition<'_> {
     /// The parameter of this run; for one that belongs to several runs, the one at this run's temperature.
     fn find<'s>(&self, sheet: &'s Sheet, name: &str) -> Option<&'s Parameter> {
-        sheet.find(name, Some(self.run)).or_else(|| {
+        sheet.find(name, Some(self.name)).or_else(|| {
             sheet.parameter.iter().find(|one| {
                 one.name == name
                     && one.run.is_none()
@@ -110,10 +127,10 @@ fn conditions(sheet: &Sheet) -> Vec<RunCondition<'_>> {
     let mut found: Vec<RunCondition<'_>> = Vec::new();
     for parameter in &sheet.parameter {
         if let Some(run) = parameter.run.as_deref()
-            && found.iter().all(|known| known.run != run)
+            && found.iter().all(|known| known.name != run)
         {
             found.push(RunCondition {
-                run,
+                name: run,
                 temperature: parameter.temperature_K,
             });
         }
@@ -121,9 +138,23 @@ fn conditions(sheet: &Sheet) -> Vec<RunCondition<'_>> {
     found
 }
 
-/// Whether a parameter belongs to several runs and has no column of its own.
-fn is_joint(parameter: &Parameter) -> bool {
-    parameter.run.is_none() && RUN_COLUMNS.iter().all(|(name, _)| *name != parameter.name)
+/// The parameters that belong to several runs and stand in no run's row.
+fn shared_by_runs(sheet: &Sheet) -> Vec<&Parameter> {
+    let runs = conditions(sheet);
+    let stands_in_a_row = |one: &Parameter| {
+        RUN_COLUMNS.iter().any(|(name, _)| {
+            *name == one.name
+                && runs.iter().any(|run| {
+                    run.find(sheet, name)
+                        .is_some_and(|shown| std::ptr::eq(shown, one))
+                })
+        })
+    };
+    sheet
+        .parameter
+        .iter()
+        .filter(|one| one.run.is_none() && !stands_in_a_row(one))
+        .collect()
 }
 
 /// A line for each different note of a parameter that is not good, with the parameters it belongs to.
@@ -160,7 +191,7 @@ fn notes(sheet: &Sheet) -> Vec<String> {
 fn plain_table(style: SummaryStyle) -> Table {
     let mut table = Table::new();
     table
-        .load_style(presets::UTF8_HORIZONTAL_ONLY)
+        .load_style(LINES)
         .set_content_arrangement(ContentArrangement::Dynamic);
     if style.colour {
         table.enforce_styling();

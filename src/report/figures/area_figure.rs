@@ -7,7 +7,7 @@ use crate::report::SheetReport;
 use super::axis::{Axis, Scale};
 use super::canvas::{Canvas, Figure};
 use super::marker::Marker;
-use super::plot_frame::{INK, LEGEND_LINE, PlotFrame};
+use super::plot_frame::{INK, LEGEND_LINE, PlotFrame, draw_legend_line};
 
 /// The figure of one sheet; `None` where no run has an area.
 #[must_use]
@@ -59,7 +59,7 @@ pub fn area_figure(sheet: &SheetReport<'_>) -> Option<Figure> {
             "temperature T (K)",
             "area per atom (\u{c5}\u{b2})",
         );
-        draw_legend(canvas, &frame, marker, &runs, curve.is_some());
+        draw_legend(canvas, marker, &runs, curve.is_some());
     }))
 }
 
@@ -78,27 +78,27 @@ impl AreaPoint {
     }
 }
 
-fn draw_legend(canvas: &Canvas<'_>, frame: &PlotFrame, marker: Marker, runs: &[AreaPoint], fitted: bool) {
+fn draw_legend(canvas: &Canvas<'_>, marker: Marker, runs: &[AreaPoint], fitted: bool) {
     let mut line = 0;
     if runs.iter().any(|run| run.free) {
-        frame.draw_legend_line(canvas, line, "mean of a run", |place| {
+        draw_legend_line(canvas, line, "mean of a run", |place| {
             marker.draw(canvas, place, true);
         });
         line += 1;
     }
     if runs.iter().any(|run| !run.free) {
-        frame.draw_legend_line(canvas, line, "held by a fixed cell", |place| {
+        draw_legend_line(canvas, line, "held by a fixed cell", |place| {
             marker.draw(canvas, place, false);
         });
         line += 1;
     }
     if fitted {
-        frame.draw_legend_line(canvas, line, "fit", |(x, y)| {
+        draw_legend_line(canvas, line, "fit", |(x, y)| {
             canvas.line(&[(x - 14.0, y), (x + 14.0, y)], INK.mix(0.75), 1.6);
         });
         line += 1;
     }
-    frame.draw_legend_line(canvas, line, "bar: 1 standard error", |(x, y)| {
+    draw_legend_line(canvas, line, "bar: 1 standard error", |(x, y)| {
         let half = 0.35 * LEGEND_LINE;
         marker.draw_error_bar(canvas, (x, y + half), (x, y - half), true);
     });

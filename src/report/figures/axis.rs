@@ -71,9 +71,14 @@ impl Axis {
         part.clamp(0.0, 1.0)
     }
 
-    /// Whether a number lies on the axis.
+    /// Whether a number lies on the axis; its ends do, whatever the last bits of a logarithm.
     pub fn shows(&self, number: f64) -> bool {
-        self.first <= number && number <= self.last
+        const ROUNDING: f64 = 1e-9;
+        let spare = match self.scale {
+            Scale::Linear => ROUNDING * (self.last - self.first),
+            Scale::Logarithmic => ROUNDING * number,
+        };
+        self.first - spare <= number && number <= self.last + spare
     }
 
     /// Ticks that carry a label.

@@ -9,10 +9,10 @@ use crate::report::{KappaPoint, SheetReport, kappa_points};
 use super::axis::{Axis, Scale};
 use super::canvas::{Canvas, Figure};
 use super::marker::Marker;
-use super::plot_frame::{LEGEND_LINE, PlotFrame};
+use super::plot_frame::{LEGEND_LINE, PlotFrame, draw_legend_line};
 
 /// Opacity of the window where the windows of all runs overlap.
-const WINDOW_OPACITY: f64 = 0.22;
+const WINDOW_OPACITY: f64 = 0.13;
 /// Lines of the legend below the runs: a gap and four explanations.
 const EXPLANATIONS: usize = 5;
 
@@ -63,7 +63,7 @@ pub fn kappa_figure(sheet: &SheetReport<'_>) -> Option<Figure> {
             "wave vector q (1/\u{c5})",
             "bending rigidity \u{3ba}(q) (eV)",
         );
-        draw_legend(canvas, &frame, &runs);
+        draw_legend(canvas, &runs);
     }))
 }
 
@@ -153,9 +153,9 @@ fn draw_curve(canvas: &Canvas<'_>, frame: &PlotFrame, run: &Drawn<'_>) {
     }
 }
 
-fn draw_legend(canvas: &Canvas<'_>, frame: &PlotFrame, runs: &[Drawn<'_>]) {
+fn draw_legend(canvas: &Canvas<'_>, runs: &[Drawn<'_>]) {
     for (line, run) in runs.iter().enumerate() {
-        frame.draw_legend_line(canvas, line, &run.label, |(x, y)| {
+        draw_legend_line(canvas, line, &run.label, |(x, y)| {
             if run.curve.is_some() {
                 canvas.line(&[(x - 14.0, y), (x + 14.0, y)], run.marker.colour.mix(0.9), 1.6);
             }
@@ -164,18 +164,18 @@ fn draw_legend(canvas: &Canvas<'_>, frame: &PlotFrame, runs: &[Drawn<'_>]) {
     }
     let first = runs.len() + 1;
     let grey = Marker::grey();
-    frame.draw_legend_line(canvas, first, "used in the fit", |place| {
+    draw_legend_line(canvas, first, "used in the fit", |place| {
         grey.draw(canvas, place, true);
     });
-    frame.draw_legend_line(canvas, first + 1, "not used", |place| {
+    draw_legend_line(canvas, first + 1, "not used", |place| {
         grey.draw(canvas, place, false);
     });
-    frame.draw_legend_line(canvas, first + 2, "window of the fit", |(x, y)| {
+    draw_legend_line(canvas, first + 2, "window of the fit", |(x, y)| {
         let half = 0.3 * LEGEND_LINE;
         let colour = RGBAColor(120, 130, 145, WINDOW_OPACITY);
         canvas.rectangle((x - 14.0, y - half), (x + 14.0, y + half), colour);
     });
-    frame.draw_legend_line(canvas, first + 3, "bar: 1 standard error", |(x, y)| {
+    draw_legend_line(canvas, first + 3, "bar: 1 standard error", |(x, y)| {
         let half = 0.35 * LEGEND_LINE;
         grey.draw_error_bar(canvas, (x, y + half), (x, y - half), true);
     });

@@ -72,10 +72,17 @@ impl Marker {
     pub fn draw_error_bar(&self, canvas: &Canvas<'_>, low: Place, high: Place, used: bool) {
         const CAP: f64 = 3.0;
         let shade = self.shade(used);
-        canvas.line(&[low, high], shade, 1.1);
-        for (x, y) in [low, high] {
-            canvas.line(&[(x - CAP, y), (x + CAP, y)], shade, 1.1);
-        }
+        let ((x, bottom), (_, top)) = (low, high);
+        let (left, right) = (x - CAP, x + CAP);
+        let stroke = [
+            (left, top),
+            (right, top),
+            (x, top),
+            (x, bottom),
+            (left, bottom),
+            (right, bottom),
+        ];
+        canvas.line(&stroke, shade, 1.1);
     }
 
     fn shade(&self, used: bool) -> RGBAColor {
@@ -85,7 +92,7 @@ impl Marker {
     /// Shapes of about equal area: a circle of radius 4 pixels sets it.
     fn outline(&self, (x, y): Place) -> Vec<Place> {
         let (corners, radius) = match self.corners {
-            0 => (24, 4.0),
+            0 => (16, 4.0),
             3 => (3, 5.6),
             4 => (4, 5.0),
             more => (more, 4.7),

@@ -6,11 +6,13 @@ use super::axis::Axis;
 use super::canvas::{Anchor, Canvas, Place};
 
 /// Width of every figure in pixels.
-pub(super) const WIDTH: u32 = 880;
+pub(super) const WIDTH: u32 = 890;
 /// Height of a figure whose legend fits.
 const HEIGHT: u32 = 520;
-const LEFT: f64 = 86.0;
+const LEFT: f64 = 94.0;
 const RIGHT: f64 = 208.0;
+/// Where the plot ends on the right.
+const END: f64 = WIDTH as f64 - RIGHT;
 const TOP: f64 = 48.0;
 const BOTTOM: f64 = 64.0;
 /// Height of a line of the legend.
@@ -19,7 +21,7 @@ pub(super) const LEGEND_LINE: f64 = 22.0;
 const LEGEND_CHARACTERS: usize = 22;
 
 pub(super) const INK: RGBAColor = RGBAColor(34, 34, 34, 1.0);
-const GRID: RGBAColor = RGBAColor(225, 225, 225, 1.0);
+const GRID: RGBAColor = RGBAColor(216, 216, 216, 1.0);
 
 /// Axes in their place.
 pub(super) struct PlotFrame {
@@ -47,13 +49,9 @@ impl PlotFrame {
     /// Where a point of the data stands.
     pub fn place(&self, x: f64, y: f64) -> Place {
         (
-            LEFT + self.x.position(x) * (self.right() - LEFT),
+            LEFT + self.x.position(x) * (END - LEFT),
             self.bottom() - self.y.position(y) * (self.bottom() - TOP),
         )
-    }
-
-    fn right(&self) -> f64 {
-        f64::from(WIDTH) - RIGHT
     }
 
     fn bottom(&self) -> f64 {
@@ -75,7 +73,7 @@ impl PlotFrame {
         }
         for (tick, _) in self.y.labelled_ticks() {
             let y = self.y_of(tick);
-            canvas.line(&[(LEFT, y), (self.right(), y)], GRID, 0.75);
+            canvas.line(&[(LEFT, y), (END, y)], GRID, 0.75);
         }
     }
 
@@ -83,7 +81,7 @@ impl PlotFrame {
     pub fn draw_axes(&self, canvas: &Canvas<'_>, title: &str, x_label: &str, y_label: &str) {
         const TICK: f64 = 6.0;
         const SMALL_TICK: f64 = 3.0;
-        let (right, bottom) = (self.right(), self.bottom());
+        let (right, bottom) = (END, self.bottom());
         let border = [
             (LEFT, TOP),
             (right, TOP),
@@ -122,22 +120,16 @@ impl PlotFrame {
         );
     }
 
-    /// A line of the legend: `draw` puts a sample around its place, `text` stands beside it.
-    pub fn draw_legend_line(&self, canvas: &Canvas<'_>, line: usize, text: &str, draw: impl FnOnce(Place)) {
-        let y = TOP + LEGEND_LINE * (line as f64 + 0.5);
-        draw((self.right() + 26.0, y));
-        canvas.text(
-            &shortened(text),
-            (self.right() + 48.0, y),
-            13.0,
-            Anchor::Left,
-            INK,
-        );
-    }
-
     fn y_of(&self, tick: f64) -> f64 {
         self.bottom() - self.y.position(tick) * (self.bottom() - TOP)
     }
+}
+
+/// A line of the legend: `draw` puts a sample around its place, `text` stands beside it.
+pub(super) fn draw_legend_line(canvas: &Canvas<'_>, line: usize, text: &str, draw: impl FnOnce(Place)) {
+    let y = TOP + LEGEND_LINE * (line as f64 + 0.5);
+    draw((END + 26.0, y));
+    canvas.text(&shortened(text), (END + 48.0, y), 13.0, Anchor::Left, INK);
 }
 
 /// At most [`LEGEND_CHARACTERS`], the middle of a longer text left out: names of runs differ at their ends.
