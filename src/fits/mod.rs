@@ -2,11 +2,23 @@
 //!
 //! To add a fit: one new file that implements [`Fit`], one `mod` line and one row in [`registry`].
 
+mod area;
+mod cell_stiffness;
+mod compliance;
+mod excess_area;
 mod outcome;
 mod quantity;
+mod run_condition;
+mod series_verdict;
+mod thermal_expansion;
 
+pub use area::AreaFit;
+pub use cell_stiffness::CellStiffnessFit;
+pub use excess_area::ExcessAreaFit;
 pub use outcome::{AreaCurve, Covariance, FitOptions, Fitted, PlateCurve, PlateModel};
 pub use quantity::{Condition, FittedValue, NORMAL_95, Quantity, Verdict};
+pub use series_verdict::{Judgement, series_verdict};
+pub use thermal_expansion::ThermalExpansionFit;
 
 use crate::estimates::SheetEstimates;
 
@@ -22,5 +34,10 @@ pub trait Fit: Sync {
 /// Every fit, in the order in which their quantities are written.
 #[must_use]
 pub fn registry() -> Vec<Box<dyn Fit>> {
-    vec![]
+    vec![
+        Box::new(area::AreaFit),
+        Box::new(excess_area::ExcessAreaFit),
+        Box::new(cell_stiffness::CellStiffnessFit),
+        Box::new(thermal_expansion::ThermalExpansionFit),
+    ]
 }
