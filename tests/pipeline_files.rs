@@ -6,7 +6,8 @@ use std::path::{Path, PathBuf};
 
 use planish::fits::{PlateModel, Verdict};
 use planish::frames::{CellAxis, Clock, EngineUnits};
-use planish::pipeline::{Diagnostics, ErrorLimit, Plan, Positions};
+use planish::pipeline::keys::{FILE, Kind};
+use planish::pipeline::{Diagnostics, ErrorLimit, PipelineFile, Plan, Positions};
 
 fn accepted(name: &str) -> Plan {
     let path = format!("tests/data/pipelines/accepted/{name}.toml");
@@ -248,5 +249,86 @@ fn colour_changes_nothing_but_colour() {
     assert_eq!(
         anstream::adapter::strip_str(&coloured).to_string(),
         problems.render(false)
+    );
+}
+
+fn problems_of(source: &str) -> Diagnostics {
+    let mut problems = Diagnostics::new(Path::new("pipeline.toml"), source);
+    let _ = PipelineFile::parse(source, &mut problems);
+    problems
+}
+
+/// A key that is declared and never read would be accepted and without effect.
+#[test]
+fn every_declared_key_is_read() {
+    let mut tried = 0;
+    for table in FILE.with_descendants() {
+        let header = match table.header {
+            "the file" | "[stage]" => continue,
+            "[[sheet.run]]" => "[[sheet]]\n[[sheet.run]]",
+            "[gate.NAME]" => "[gate.tension]",
+            header => header,
+        };
+        for key in table.keys {
+            if matches!(key.kind, Kind::Tables(_)) {
+                continue;
+            }
+            let problems = problems_of(&format!("{header}\n{} = 1979-05-27\n", key.name));
+            let wanted = format!("`{}` is a date", key.name);
+            assert!(
+                problems
+                    .sorted()
+                    .iter()
+                    .any(|problem| problem.message.starts_with(&wanted)),
+                "{} {}: {problems}",
+                table.header,
+                key.name
+            );
+            tried += 1;
+        }
+    }
+    assert!(tried > 20);
+}
+
+/// Half-written files, cut anywhere or with any one letter replaced, give messages and never a panic.
+#[test]
+fn damaged_files_are_answered() {
+    for name in ["contract", "stages"] {
+        let whole = std::fs::read_to_string(format!("tests/data/pipelines/accepted/{name}.toml")).unwrap();
+        assert!(problems_of(&whole).is_empty());
+        for (place, letter) in whole.char_indices() {
+            let _ = problems_of(&whole[..place]).to_string();
+            for other in ["[", "\"", "=", "é", "\u{0}", "\n"] {
+                let damaged = format!(
+                    "{}{other}{}",
+                    &whole[..place],
+                    &whole[place + letter.len_utf8()..]
+                );
+                let problems = problems_of(&damaged);
+                if problems.has_errors() {
+                    assert!(!problems.render(false).is_empty());
+                }
+            }
+        }
+    }
+}
+
+/// An editor on another system ends lines with a carriage return too, and may begin the file with a byte order mark.
+#[test]
+fn other_line_ends_change_no_place() {
+    let source = std::fs::read_to_string("tests/data/pipelines/rejected/bare-number.toml").unwrap();
+    let place = |problems: &Diagnostics| {
+        let span = problems.sorted()[0].span.clone().unwrap();
+        problems.line_and_column(span.start)
+    };
+    let plain = problems_of(&source);
+    let windows = problems_of(&source.replace('\n', "\r\n"));
+    assert_eq!(place(&plain), (9, 15));
+    assert_eq!(place(&windows), (9, 15));
+    assert!(
+        problems_of("\u{feff}[pipeline]\nname = \"job\"\n")
+            .sorted()
+            .iter()
+            .all(|problem| problem.message.contains("[[sheet]]"))
     );
 }

@@ -6,7 +6,8 @@ use toml::de::{DeTable, DeValue};
 
 use super::diagnostics::{Diagnostic, Diagnostics};
 use super::keys::{Bound, GATE_LIMIT, Kind};
-use super::table_reader::{TableReader, nearest};
+use super::table_reader::TableReader;
+use super::wording::nearest;
 use crate::fits::Verdict;
 use crate::units::Dimension;
 
@@ -122,8 +123,7 @@ fn read_limit(
                     "expected a table with min, max, max_error or verdict",
                 )
                 .help(format!(
-                    "write {parameter} = {{ max = \"{}\" }}",
-                    dimension.example()
+                    "write {parameter} = {{ max_error = \"5 %\" }}, for example"
                 )),
         );
         return None;

@@ -385,7 +385,8 @@ pub static GATE_LIMIT: TableKeys = TableKeys {
 
 #[cfg(test)]
 mod tests {
-    use super::{FILE, Presence};
+    use super::{DEFAULT_BLOCK_FRAMES, DEFAULT_WANTED_ERROR, FILE, FIT, Presence, SPECTRUM, TableKeys};
+    use crate::units::Dimension;
 
     #[test]
     fn keys_are_unique_and_documented() {
@@ -400,5 +401,20 @@ mod tests {
                 assert_ne!(key.presence, Presence::Default(""), "{}", key.name);
             }
         }
+    }
+    #[test]
+    fn documented_defaults_are_those_used() {
+        let default = |table: &'static TableKeys, name: &str| match table.find(name).unwrap().presence {
+            Presence::Default(text) => text,
+            Presence::Required => panic!("{name} has no default"),
+        };
+        assert_eq!(
+            default(&SPECTRUM, "block_frames"),
+            DEFAULT_BLOCK_FRAMES.to_string()
+        );
+        assert_eq!(
+            Dimension::Number.parse(default(&FIT, "wanted_error")),
+            Ok(DEFAULT_WANTED_ERROR)
+        );
     }
 }

@@ -11,6 +11,7 @@ mod progress;
 mod replicas;
 mod resolve;
 mod table_reader;
+mod wording;
 
 pub use canonical::{MeasuredForm, MeasuredSettings};
 pub use diagnostics::{Diagnostic, Diagnostics, Related, Severity};

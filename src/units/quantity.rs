@@ -59,7 +59,6 @@ impl QuantityError {
     #[must_use]
     pub fn remedy(&self) -> String {
         match self {
-            Self::NotANumber { dimension, .. } | Self::WrongDimension { dimension, .. } => taken(*dimension),
             Self::MissingUnit { text, dimension } => {
                 format!(
                     "write \"{} {}\"; {}",
@@ -74,7 +73,9 @@ impl QuantityError {
                 dimension,
                 ..
             } => format!("did you mean \"{number} {nearest}\"? {}", taken(*dimension)),
-            Self::UnknownUnit { dimension, .. } => taken(*dimension),
+            Self::NotANumber { dimension, .. }
+            | Self::WrongDimension { dimension, .. }
+            | Self::UnknownUnit { dimension, .. } => taken(*dimension),
             Self::NotAbsolute { .. } => {
                 "write kelvin, such as \"300 K\": add 273.15 to degrees Celsius".to_owned()
             }
