@@ -359,13 +359,11 @@ fn derivatives_agree_with_finite_differences() {
             let close = |left: f64, right: f64| (left - right).abs() < 2e-6 * (1.0 + right.abs());
             assert!(
                 close(exact.ln_power[mode], power),
-                "{parameter}, {mode}: {} {power}",
-                ln_power[mode]
+                "{parameter}, {mode}: ln power {power}"
             );
             assert!(
                 close(exact.ln_kappa[mode], kappa),
-                "{parameter}, {mode}: {} {kappa}",
-                ln_kappa[mode]
+                "{parameter}, {mode}: ln kappa {kappa}"
             );
         }
     }

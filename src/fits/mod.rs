@@ -6,17 +6,28 @@ mod area;
 mod cell_stiffness;
 mod compliance;
 mod excess_area;
+mod harmonic_plate;
+mod lack_of_fit;
+pub mod mode_verdict;
 mod outcome;
+pub mod plate_covariance;
+pub mod plate_likelihood;
+mod plate_run;
 mod quantity;
+mod ripple_model;
+mod rippled_plate;
 mod run_condition;
 mod series_verdict;
 mod thermal_expansion;
+mod window;
 
 pub use area::AreaFit;
 pub use cell_stiffness::CellStiffnessFit;
 pub use excess_area::ExcessAreaFit;
+pub use harmonic_plate::HarmonicPlate;
 pub use outcome::{AreaCurve, Covariance, FitOptions, Fitted, PlateCurve, PlateModel};
 pub use quantity::{Condition, FittedValue, NORMAL_95, Quantity, Verdict};
+pub use rippled_plate::RippledPlate;
 pub use series_verdict::{Judgement, series_verdict};
 pub use thermal_expansion::ThermalExpansionFit;
 
@@ -35,9 +46,11 @@ pub trait Fit: Sync {
 #[must_use]
 pub fn registry() -> Vec<Box<dyn Fit>> {
     vec![
-        Box::new(area::AreaFit),
-        Box::new(excess_area::ExcessAreaFit),
-        Box::new(cell_stiffness::CellStiffnessFit),
-        Box::new(thermal_expansion::ThermalExpansionFit),
+        Box::new(RippledPlate),
+        Box::new(HarmonicPlate),
+        Box::new(CellStiffnessFit),
+        Box::new(AreaFit),
+        Box::new(ThermalExpansionFit),
+        Box::new(ExcessAreaFit),
     ]
 }
