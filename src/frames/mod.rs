@@ -1,15 +1,44 @@
 //! Reading: trajectories, topologies and thermo series become [`Frame`]s, [`SheetAtoms`] and [`ThermoSeries`].
 //!
 //! Everything here is in the program's units (A, ps, eV, K, g/mol), whatever the file was written in.
+//!
+//! [`RunFrames`] is the whole of it for a run's trajectory: it opens the files through [`open`], which gives each
+//! to the reader of its format (a [`FrameSource`]), joins them in time and hands out checked frames.
 
 mod cell;
+mod chemfiles_reader;
+mod chemfiles_thread;
+mod dump_box;
+mod dump_columns;
+mod engine_units;
 mod error;
 mod frame;
+mod lammps_dump;
+mod read_note;
+mod reader;
+mod run_files;
+mod run_frames;
 mod run_input;
 mod source;
+mod text_file;
+mod thermo;
+mod thermo_cp2k;
+mod thermo_csv;
+mod thermo_lammps_log;
+mod thermo_quantity;
+mod thermo_xvg;
+mod time_table;
+mod topology;
 
 pub use cell::{Cell, CellAxis, cross, dot, length};
+pub use chemfiles_reader::ChemfilesSource;
 pub use error::FrameError;
 pub use frame::{Frame, SheetAtoms};
+pub use lammps_dump::LammpsDumpSource;
+pub use read_note::ReadNote;
+pub use reader::open;
+pub use run_frames::{FramePlace, RunFrames};
 pub use run_input::{Clock, EngineUnits, RunInput};
-pub use source::FrameSource;
+pub use source::{FirstFrameWork, FrameSource, ReadOptions};
+pub use thermo::ThermoSeries;
+pub use time_table::TimeTable;

@@ -1,0 +1,409 @@
+//! Text dumps of the LAMMPS engine, plain or compressed.
+//!
+//! Format: "dump" and "Howto triclinic" pages of the LAMMPS manual. Each frame has optional `ITEM: UNITS` and
+//! `ITEM: TIME`, then the step, the number of atoms, the box, and a table of atoms whose columns are named.
+
+use std::io;
+use std::path::{Path, PathBuf};
+
+use super::dump_box::DumpBox;
+use super::dump_columns::{AtomRow, DumpColumns};
+use super::source::FirstFrameWork;
+use super::text_file::TextFile;
+use super::time_table::TimeTable;
+use super::{Clock, EngineUnits, Frame, FrameError, FrameSource, ReadNote, ReadOptions, SheetAtoms};
+
+/// A text dump: an index of its frames, made when it is opened, and the order of its atoms.
+///
+/// Atoms stand in ascending order of their ids, whatever their order in the file; a dump of a group, whose ids have gaps,
+/// is read like any other. Without an id column the order of the file is kept, with a note.
+pub struct LammpsDumpSource {
+    path: PathBuf,
+    text: TextFile,
+    frames: Vec<FrameHead>,
+    clock: Clock,
+    units: Option<EngineUnits>,
+    /// The ids of the first frame, ascending; empty where the dump has none.
+    ids: Vec<u64>,
+    notes: Vec<ReadNote>,
+    line: Vec<u8>,
+}
+
+/// What the index keeps of a frame.
+struct FrameHead {
+    /// Where the frame starts, in bytes of text.
+    start: u64,
+    atoms: usize,
+    step: u64,
+    /// `ITEM: TIME`, in the engine's unit.
+    time: Option<f64>,
+}
+
+/// The parts of a frame before its atoms.
+struct Header {
+    head: FrameHead,
+    units: Option<String>,
+    bounds: DumpBox,
+    columns: String,
+}
+
+/// Why a header could not be read.
+enum HeaderError {
+    /// The file ends here: between two frames (`true`), or within this one.
+    End(bool),
+    Io(io::Error),
+    Content(String),
+}
+
+impl From<io::Error> for HeaderError {
+    fn from(error: io::Error) -> Self {
+        Self::Io(error)
+    }
+}
+
+impl LammpsDumpSource {
+    /// Opens a dump and indexes its frames: one pass over the text, in which only headers are parsed.
+    ///
+    /// # Errors
+    /// Where a header is malformed, the file holds no whole frame, or its units are unknown or contradict
+    /// `engine_units`.
+    pub fn open(path: &Path, options: &ReadOptions) -> Result<Self, FrameError> {
+        let text = TextFile::open(path).map_err(|error| unreadable(path, &error))?;
+        let mut source = Self {
+            path: path.to_owned(),
+            text,
+            frames: Vec::new(),
+            clock: options.clock,
+            units: options.engine_units,
+            ids: Vec::new(),
+            notes: Vec::new(),
+            line: Vec::new(),
+        };
+        source.index(options.engine_units)?;
+        if source.frames.is_empty() {
+            return Err(FrameError::NoFrames {
+                path: path.to_owned(),
+                reason: "the first frame is incomplete".to_owned(),
+            });
+        }
+        source.find_ids()?;
+        Ok(source)
+    }
+
+    fn index(&mut self, asked: Option<EngineUnits>) -> Result<(), FrameError> {
+        loop {
+            let frame = self.frames.len();
+            let header = match self.header() {
+                Ok(header) => header,
+                Err(HeaderError::End(true)) => return Ok(()),
+                Err(HeaderError::End(false)) => {
+                    self.notes.push(ReadNote::IncompleteFrame {
+                        path: self.path.clone(),
+                        frame,
+                    });
+                    return Ok(());
+                }
+                Err(HeaderError::Io(error)) => return Err(unreadable(&self.path, &error)),
+                Err(HeaderError::Content(reason)) => return Err(self.bad_frame(frame, reason)),
+            };
+            if frame == 0
+                && let Some(name) = &header.units
+            {
+                self.units = Some(self.agreed_units(name, asked)?);
+            }
+            let whole = self
+                .text
+                .skip_lines(header.head.atoms)
+                .map_err(|error| unreadable(&self.path, &error))?;
+            if !whole {
+                self.notes.push(ReadNote::IncompleteFrame {
+                    path: self.path.clone(),
+                    frame,
+                });
+                return Ok(());
+            }
+            self.frames.push(header.head);
+        }
+    }
+
+    fn agreed_units(&self, name: &str, asked: Option<EngineUnits>) -> Result<EngineUnits, FrameError> {
+        let found = EngineUnits::from_name(name).ok_or_else(|| FrameError::Units {
+            path: self.path.clone(),
+            reason: format!(
+                "the dump says ITEM: UNITS {name}, which planish does not know; it takes {}: write the dump in one of these",
+                EngineUnits::NAMES
+            ),
+        })?;
+        match asked {
+            Some(asked) if asked != found => Err(FrameError::Units {
+                path: self.path.clone(),
+                reason: format!(
+                    "the dump says ITEM: UNITS {name}, but engine_units = \"{}\"; remove `engine_units` or correct it",
+                    asked.name()
+                ),
+            }),
+            _ => Ok(found),
+        }
+    }
+
+    /// Takes the ids of the first frame as the order of the atoms.
+    fn find_ids(&mut self) -> Result<(), FrameError> {
+        let mut ids = Vec::with_capacity(self.frames[0].atoms);
+        self.for_each_atom(0, |_, row| {
+            if let Some(id) = row.id {
+                ids.push(id);
+            }
+            Ok(())
+        })?;
+        ids.sort_unstable();
+        if let Some(pair) = ids.windows(2).find(|pair| pair[0] == pair[1]) {
+            return Err(self.bad_frame(0, format!("two atoms have the id {}", pair[0])));
+        }
+        if ids.is_empty() {
+            self.notes.push(ReadNote::OrderAssumed {
+                path: self.path.clone(),
+            });
+        }
+        self.ids = ids;
+        Ok(())
+    }
+
+    /// Calls `take` with the box and each atom of a frame, in the order of the file.
+    fn for_each_atom(
+        &mut self,
+        frame: usize,
+        mut take: impl FnMut(usize, AtomRow<'_>) -> Result<(), String>,
+    ) -> Result<DumpBox, FrameError> {
+        let start = self.frames[frame].start;
+        self.text
+            .seek(start)
+            .map_err(|error| unreadable(&self.path, &error))?;
+        let header = self.header().map_err(|error| match error {
+            HeaderError::End(_) => self.bad_frame(frame, "the file ends within the frame".to_owned()),
+            HeaderError::Io(error) => unreadable(&self.path, &error),
+            HeaderError::Content(reason) => self.bad_frame(frame, reason),
+        })?;
+        let columns = DumpColumns::parse(&header.columns).map_err(|reason| self.bad_frame(frame, reason))?;
+        for row in 0..header.head.atoms {
+            let whole = self
+                .text
+                .read_line(&mut self.line)
+                .map_err(|error| unreadable(&self.path, &error))?;
+            let parsed = if whole {
+                let line = std::str::from_utf8(&self.line).map_err(|error| error.to_string());
+                line.and_then(|line| columns.row(line, &header.bounds))
+                    .and_then(|atom| take(row, atom))
+            } else {
+                Err("the file ends within the frame".to_owned())
+            };
+            parsed.map_err(|reason| self.bad_frame(frame, format!("atom line {}: {reason}", row + 1)))?;
+        }
+        Ok(header.bounds)
+    }
+
+    /// Reads the parts of the next frame before its atoms.
+    fn header(&mut self) -> Result<Header, HeaderError> {
+        let start = self.text.position();
+        let mut first = self.next_line(true)?;
+        // A file that was joined by hand may have empty lines between its frames.
+        while first.is_empty() {
+            first = self.next_line(true)?;
+        }
+        let mut units = None;
+        let mut time = None;
+        while first != "ITEM: TIMESTEP" {
+            let value = self.next_line(false)?;
+            match first.as_str() {
+                "ITEM: UNITS" => units = Some(value),
+                "ITEM: TIME" => time = Some(number(&value)?),
+                _ => return Err(expected("ITEM: TIMESTEP", &first)),
+            }
+            first = self.next_line(false)?;
+        }
+        let step = whole_number(&self.next_line(false)?)?;
+        self.expect_line("ITEM: NUMBER OF ATOMS")?;
+        let atoms = whole_number(&self.next_line(false)?)? as usize;
+        let line = self.next_line(false)?;
+        let kind = line
+            .strip_prefix("ITEM: BOX BOUNDS")
+            .ok_or_else(|| expected("ITEM: BOX BOUNDS", &line))?
+            .to_owned();
+        let mut rows = [const { String::new() }; 3];
+        for row in &mut rows {
+            *row = self.next_line(false)?;
+        }
+        let length = self.units.map_or(1.0, EngineUnits::length_a);
+        let bounds = DumpBox::parse(&kind, &rows, length).map_err(HeaderError::Content)?;
+        let line = self.next_line(false)?;
+        let columns = line
+            .strip_prefix("ITEM: ATOMS")
+            .ok_or_else(|| expected("ITEM: ATOMS", &line))?;
+        let head = FrameHead {
+            start,
+            atoms,
+            step,
+            time,
+        };
+        Ok(Header {
+            head,
+            units,
+            bounds,
+            columns: columns.to_owned(),
+        })
+    }
+
+    fn expect_line(&mut self, wanted: &str) -> Result<(), HeaderError> {
+        let line = self.next_line(false)?;
+        if line == wanted {
+            Ok(())
+        } else {
+            Err(expected(wanted, &line))
+        }
+    }
+
+    /// The next line, trimmed. `between` says that a frame has not begun yet.
+    fn next_line(&mut self, between: bool) -> Result<String, HeaderError> {
+        let whole = self.text.read_line(&mut self.line)?;
+        if !whole {
+            return Err(HeaderError::End(between && self.line.is_empty()));
+        }
+        let line =
+            std::str::from_utf8(&self.line).map_err(|error| HeaderError::Content(error.to_string()))?;
+        Ok(line.trim().to_owned())
+    }
+
+    fn time(&self, frame: usize) -> Option<f64> {
+        let head = &self.frames[frame];
+        match self.clock {
+            Clock::Timestep(timestep) => Some(head.step as f64 * timestep),
+            // Metal and real units share the A but not the unit of time, so a bare time is used only where they are said.
+            Clock::File => Some(head.time? * self.units?.time_ps()),
+            Clock::FrameInterval(_) => None,
+        }
+    }
+
+    fn bad_frame(&self, frame: usize, reason: String) -> FrameError {
+        FrameError::BadFrame {
+            path: self.path.clone(),
+            frame,
+            reason,
+        }
+    }
+}
+
+impl FrameSource for LammpsDumpSource {
+    fn path(&self) -> &Path {
+        &self.path
+    }
+
+    fn len(&self) -> usize {
+        self.frames.len()
+    }
+
+    fn read(&mut self, index: usize, frame: &mut Frame) -> Result<(), FrameError> {
+        let atoms = self.frames[index].atoms;
+        let expected = self.frames[0].atoms;
+        if atoms != expected {
+            return Err(FrameError::AtomCountChanged {
+                path: self.path.clone(),
+                frame: index,
+                found: atoms,
+                expected,
+            });
+        }
+        let ids = std::mem::take(&mut self.ids);
+        frame.positions.clear();
+        // As many atoms as places, and no id comes twice: in the end every place is filled.
+        let mut filled = vec![false; if ids.is_empty() { 0 } else { atoms }];
+        frame.positions.resize(atoms, [0.0; 3]);
+        let positions = &mut frame.positions;
+        let outcome = self.for_each_atom(index, |row, atom| {
+            let Some(id) = atom.id else {
+                positions[row] = atom.position;
+                return if ids.is_empty() {
+                    Ok(())
+                } else {
+                    Err("the atom has no id".to_owned())
+                };
+            };
+            let place = ids
+                .binary_search(&id)
+                .map_err(|_| format!("the atom with id {id} is not in the first frame of the file"))?;
+            if std::mem::replace(&mut filled[place], true) {
+                return Err(format!("two atoms have the id {id}"));
+            }
+            positions[place] = atom.position;
+            Ok(())
+        });
+        self.ids = ids;
+        frame.cell = outcome?.cell();
+        frame.time_ps = self.time(index);
+        Ok(())
+    }
+
+    fn with_first_frame(&mut self, work: FirstFrameWork) -> Result<SheetAtoms, FrameError> {
+        let mut atoms = Vec::with_capacity(self.frames[0].atoms);
+        self.for_each_atom(0, |row, atom| {
+            let label = atom.element.or(atom.kind).unwrap_or("").to_owned();
+            let kind = atom.kind.unwrap_or(&label).to_owned();
+            atoms.push((
+                atom.id.unwrap_or(row as u64),
+                label,
+                kind,
+                atom.mass,
+                atom.position,
+            ));
+            Ok(())
+        })?;
+        atoms.sort_by_key(|atom| atom.0);
+        super::chemfiles_thread::on_chemfiles_thread(move |_| {
+            let mut frame = chemfiles::Frame::new();
+            for (_, label, kind, mass, position) in &atoms {
+                let mut atom = chemfiles::Atom::new(label.as_str());
+                atom.set_atomic_type(kind.as_str());
+                if let Some(mass) = mass {
+                    atom.set_mass(*mass);
+                }
+                frame.add_atom(&atom, *position, None);
+            }
+            work(frame)
+        })?
+    }
+
+    fn times(&mut self) -> Result<TimeTable, FrameError> {
+        let times: Option<Vec<f64>> = (0..self.len()).map(|frame| self.time(frame)).collect();
+        Ok(times.map_or_else(
+            || {
+                let reason = if self.frames.iter().all(|head| head.time.is_some()) {
+                    "its ITEM: TIME has no unit; give `engine_units`"
+                } else {
+                    "the dump stores steps only; write it with `dump_modify time yes units yes`"
+                };
+                TimeTable::Absent(reason.to_owned())
+            },
+            TimeTable::Listed,
+        ))
+    }
+
+    fn notes(&self) -> &[ReadNote] {
+        &self.notes
+    }
+}
+
+fn unreadable(path: &Path, error: &io::Error) -> FrameError {
+    super::reader::unreadable(path, error)
+}
+
+fn expected(wanted: &str, found: &str) -> HeaderError {
+    HeaderError::Content(format!("found \"{found}\" where \"{wanted}\" was expected"))
+}
+
+fn number(text: &str) -> Result<f64, HeaderError> {
+    text.parse()
+        .map_err(|_| HeaderError::Content(format!("\"{text}\" is not a number")))
+}
+
+fn whole_number(text: &str) -> Result<u64, HeaderError> {
+    text.parse()
+        .map_err(|_| HeaderError::Content(format!("\"{text}\" is not a whole number")))
+}

@@ -1,0 +1,143 @@
+//! The files of a run in time order, and the time of every frame in them.
+
+use std::cmp::Ordering;
+use std::path::{Path, PathBuf};
+
+use super::reader;
+use super::time_table::TimeTable;
+use super::{Clock, FrameError, FrameSource, ReadNote, ReadOptions, RunInput};
+
+/// Files kept open at a time; a run of thousands of restart files must not run out of file handles.
+const OPEN_FILES: usize = 32;
+
+/// The trajectory files of a run, in time order.
+pub(super) struct RunFiles {
+    files: Vec<RunFile>,
+    clock: Clock,
+    options: ReadOptions,
+    /// The files that are open, the one opened last standing last.
+    open: Vec<(usize, Box<dyn FrameSource>)>,
+    notes: Vec<ReadNote>,
+}
+
+struct RunFile {
+    path: PathBuf,
+    frames: usize,
+    /// Frames in the files before it.
+    frames_before: usize,
+    /// The file's own times.
+    times: TimeTable,
+}
+
+impl RunFiles {
+    /// Opens every file once to learn its frames and times, and sorts the matches of each glob.
+    pub fn open(input: &RunInput) -> Result<Self, FrameError> {
+        // With a stated frame interval the files' own times, where there are any, still put a glob in order.
+        let source_clock = match input.clock {
+            Clock::FrameInterval(_) => Clock::File,
+            clock => clock,
+        };
+        let options = ReadOptions {
+            clock: source_clock,
+            engine_units: input.engine_units,
+        };
+        let mut run = Self {
+            files: Vec::new(),
+            clock: input.clock,
+            options,
+            open: Vec::new(),
+            notes: Vec::new(),
+        };
+        for entry in &input.trajectory {
+            let mut files = Vec::with_capacity(entry.len());
+            for path in entry {
+                let mut source = reader::open(path, &options)?;
+                let times = source.times()?;
+                run.notes.extend_from_slice(source.notes());
+                files.push(RunFile {
+                    path: path.clone(),
+                    frames: source.len(),
+                    frames_before: 0,
+                    times,
+                });
+            }
+            let timed = files.iter().all(|file: &RunFile| file.times.time(0).is_some());
+            files.sort_by(|one, other| in_time_order(timed, one, other));
+            run.files.append(&mut files);
+        }
+        if run.files.is_empty() {
+            return Err(FrameError::NoFiles);
+        }
+        let mut before = 0;
+        for file in &mut run.files {
+            file.frames_before = before;
+            before += file.frames;
+        }
+        Ok(run)
+    }
+
+    /// How many files there are; at least one.
+    pub fn len(&self) -> usize {
+        self.files.len()
+    }
+
+    /// The path of a file.
+    pub fn path(&self, file: usize) -> &Path {
+        &self.files[file].path
+    }
+
+    /// How many frames a file holds; at least one.
+    pub fn frames(&self, file: usize) -> usize {
+        self.files[file].frames
+    }
+
+    /// The time of a frame in ps, as the clock says.
+    pub fn time(&self, file: usize, frame: usize) -> Option<f64> {
+        let file = &self.files[file];
+        match self.clock {
+            Clock::FrameInterval(interval) => Some((file.frames_before + frame) as f64 * interval),
+            Clock::File | Clock::Timestep(_) => file.times.time(frame),
+        }
+    }
+
+    /// The first file whose frames have no times, and why.
+    pub fn without_times(&self) -> Option<(PathBuf, String)> {
+        if matches!(self.clock, Clock::FrameInterval(_)) {
+            return None;
+        }
+        self.files.iter().find_map(|file| match &file.times {
+            TimeTable::Absent(reason) => Some((file.path.clone(), reason.clone())),
+            TimeTable::Even { .. } | TimeTable::Listed(_) => None,
+        })
+    }
+
+    /// Takes what the readers had to say when the files were opened.
+    pub fn take_notes(&mut self) -> Vec<ReadNote> {
+        std::mem::take(&mut self.notes)
+    }
+
+    /// The reader of a file, opened again where it was closed.
+    pub fn source(&mut self, file: usize) -> Result<&mut dyn FrameSource, FrameError> {
+        let place = match self.open.iter().position(|(open, _)| *open == file) {
+            Some(place) => place,
+            None => {
+                if self.open.len() == OPEN_FILES {
+                    self.open.remove(0);
+                }
+                let source = reader::open(&self.files[file].path, &self.options)?;
+                self.open.push((file, source));
+                self.open.len() - 1
+            }
+        };
+        Ok(self.open[place].1.as_mut())
+    }
+}
+
+/// By the first time where every file has one, then by name, numbers in it counted as numbers.
+fn in_time_order(timed: bool, one: &RunFile, other: &RunFile) -> Ordering {
+    let by_time = match (one.times.time(0), other.times.time(0)) {
+        (Some(one), Some(other)) if timed => one.total_cmp(&other),
+        _ => Ordering::Equal,
+    };
+    by_time.then_with(|| alphanumeric_sort::compare_path(&one.path, &other.path))
+}

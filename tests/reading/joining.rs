@@ -1,0 +1,146 @@
+//! Which frames of which files are kept, in which order, at which times.
+
+use planish::frames::{Clock, ReadNote, RunInput};
+
+use super::files::{
+    BOX, ROTATED, TRICLINIC, extended_xyz, folder, input, open, read, refused, says, write, write_binary,
+};
+
+#[test]
+fn from_to_and_stride_choose_frames_by_time() {
+    let folder = folder();
+    let times: Vec<f64> = (0..20).map(|k| 0.4 * f64::from(k)).collect();
+    let path = write_binary(&folder, "t.xtc", &BOX, &times);
+    let run = open(&RunInput {
+        from: Some(2.4),
+        to: Some(6.8),
+        stride: 3,
+        ..input(&[&path])
+    });
+    // 2.4 and 6.8 are rounded to single precision in the file, and belong to the part all the same.
+    let frames: Vec<usize> = (0..run.len()).map(|k| run.place(k).frame_in_file).collect();
+    assert_eq!(frames, [6, 9, 12, 15]);
+    let tight = open(&RunInput {
+        from: Some(2.4),
+        to: Some(6.8),
+        ..input(&[&path])
+    });
+    assert_eq!(tight.place(0).frame_in_file, 6);
+    assert_eq!(tight.place(tight.len() - 1).frame_in_file, 17);
+    assert_eq!(run.source_len(), 20);
+    assert!((run.frame_interval_ps().expect("times") - 1.2).abs() < 1e-6);
+    assert!((run.first_time_ps().expect("times") - 2.4).abs() < 1e-6);
+    assert_eq!(
+        run.place(3).to_string(),
+        format!("frame 15 of {} (t = 6 ps)", path.display())
+    );
+}
+
+#[test]
+fn a_restart_that_repeats_frames_is_joined_without_them() {
+    let folder = folder();
+    // The names sort against the times; the times win.
+    let late = write_binary(&folder, "part1.xtc", &BOX, &[2.0, 3.0, 4.0, 5.0]);
+    let early = write_binary(&folder, "part2.xtc", &BOX, &[0.0, 1.0, 2.0, 3.0]);
+    let mut run = open(&RunInput {
+        trajectory: vec![vec![late.clone(), early]],
+        ..input(&[])
+    });
+    let times: Vec<Option<f64>> = (0..run.len()).map(|k| read(&mut run, k).time_ps).collect();
+    assert_eq!(times, [0.0, 1.0, 2.0, 3.0, 4.0, 5.0].map(Some));
+    assert_eq!(run.place(4).path, late);
+    let note = ReadNote::OverlapDropped {
+        path: late,
+        frames: 2,
+        first_ps: 2.0,
+        last_ps: 3.0,
+    };
+    assert!(run.notes().contains(&note), "{:?}", run.notes());
+    says(&note.to_string(), &["2 frame(s) from 2 ps to 3 ps"]);
+    assert_eq!(run.frame_interval_ps(), Some(1.0));
+}
+
+#[test]
+fn files_without_times_are_sorted_by_natural_name_and_timed_by_the_interval() {
+    let folder = folder();
+    let bare = extended_xyz(&BOX, &[0.0]).replace("time=0.0", "");
+    let ten = write(&folder, "run10.xyz", &bare);
+    let two = write(&folder, "run2.xyz", &bare);
+    let asked = RunInput {
+        trajectory: vec![vec![ten, two.clone()]],
+        ..input(&[])
+    };
+    let run = open(&asked);
+    assert_eq!(run.place(0).path, two);
+    assert_eq!((run.frame_interval_ps(), run.first_time_ps()), (None, None));
+    assert!(
+        run.notes()
+            .iter()
+            .any(|note| matches!(note, ReadNote::TimesMissing { .. }))
+    );
+    says(
+        &refused(&RunInput {
+            to: Some(1.0),
+            ..asked.clone()
+        }),
+        &["`to` needs frame times", "frame_interval"],
+    );
+    let mut run = open(&RunInput {
+        clock: Clock::FrameInterval(0.5),
+        from: Some(0.5),
+        ..asked
+    });
+    assert_eq!(run.len(), 1);
+    assert_eq!(read(&mut run, 0).time_ps, Some(0.5));
+    assert!(
+        !run.notes()
+            .iter()
+            .any(|note| matches!(note, ReadNote::TimesMissing { .. }))
+    );
+}
+
+#[test]
+fn uneven_times_are_all_read_and_noted() {
+    let folder = folder();
+    // The first two and the last lie on one line; a restart in the middle repeats a time and a gap makes up for it.
+    let times = [0.0, 1.0, 2.0, 3.0, 3.0, 4.0, 5.0, 7.0, 8.0, 9.0];
+    let path = write_binary(&folder, "t.xtc", &BOX, &times);
+    let run = open(&input(&[&path]));
+    assert_eq!((run.len(), run.source_len()), (9, 10));
+    assert_eq!(run.frame_interval_ps(), Some(1.0));
+    let uneven = |note: &&ReadNote| matches!(note, ReadNote::UnevenSpacing { .. });
+    let note = run.notes().iter().find(uneven).expect("noted");
+    says(
+        &note.to_string(),
+        &["from 1 ps to 2 ps (before frame 7 of", "1 ps is used"],
+    );
+}
+
+#[test]
+fn steps_give_times() {
+    let folder = folder();
+    let path = write_binary(&folder, "t.xtc", &BOX, &[7.0, 8.0, 9.0]);
+    let mut run = open(&RunInput {
+        clock: Clock::Timestep(0.002),
+        ..input(&[&path])
+    });
+    assert_eq!(read(&mut run, 2).time_ps, Some(4.0));
+}
+
+#[test]
+fn runs_may_move_between_threads_and_be_read_side_by_side() {
+    let folder = folder();
+    let a = write(&folder, "a.xyz", extended_xyz(&ROTATED, &[0.0, 1.0, 2.0]));
+    let b = write_binary(&folder, "b.xtc", &TRICLINIC, &[0.0, 1.0, 2.0]);
+    std::thread::scope(|scope| {
+        for (path, cell) in [(&a, &ROTATED), (&b, &TRICLINIC), (&a, &ROTATED)] {
+            let mut run = open(&input(&[path]));
+            scope.spawn(move || {
+                for round in 0..20 {
+                    let frame = read(&mut run, round % 3);
+                    assert!((frame.cell.vectors[1][0] - cell[1][0]).abs() < 1e-4);
+                }
+            });
+        }
+    });
+}
