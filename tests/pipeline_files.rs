@@ -7,7 +7,8 @@ use std::path::{Path, PathBuf};
 use planish::fits::{PlateModel, Verdict};
 use planish::frames::{CellAxis, Clock, EngineUnits};
 use planish::pipeline::keys::{FILE, Kind};
-use planish::pipeline::{Diagnostics, ErrorLimit, PipelineFile, Plan, Positions};
+use planish::pipeline::{Diagnostics, ErrorLimit, PipelineFile, Plan};
+use planish::sheet::Positions;
 
 fn accepted(name: &str) -> Plan {
     let path = format!("tests/data/pipelines/accepted/{name}.toml");

@@ -11,5 +11,5 @@ pub use arguments::{Arguments, Command, RunArguments, SharedOptions};
 pub use dispatch::dispatch;
 pub use exit_status::ExitStatus;
 pub use progress_bar::{PlainLines, ProgressBar, Quiet};
-pub use run::{Failure, Finished, finish};
+pub use run::{Failure, finish};
 pub use terminal::Terminal;

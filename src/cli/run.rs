@@ -1,22 +1,10 @@
 //! `planish run`: the whole job.
 
-use crate::parameters::Sheet;
-use crate::pipeline::Progress;
+use crate::pipeline::{self, Plan, Progress, RunOptions, RunOutcome};
 use crate::report::summary;
 
 use super::terminal::{Message, tell};
 use super::{ExitStatus, PlainLines, ProgressBar, Quiet, RunArguments, SharedOptions, Terminal};
-
-/// What a finished job leaves to say.
-#[derive(Clone, Debug, Default, PartialEq)]
-pub struct Finished {
-    /// The parameters of each sheet, for the summary.
-    pub sheets: Vec<Sheet>,
-    /// Runs that were refused for their input, each with its error.
-    pub refused: Vec<String>,
-    /// Gates of the pipeline that were not met, each with what was found.
-    pub gate_missed: Vec<String>,
-}
 
 /// Why a job could not be done at all.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -30,7 +18,7 @@ pub enum Failure {
 /// Runs a pipeline, prints the summary, and says how it went.
 pub(super) fn run(arguments: &RunArguments, terminal: Terminal) -> ExitStatus {
     let progress = watcher(&arguments.shared, terminal);
-    match run_pipeline(arguments, progress.as_ref()) {
+    match run_pipeline(arguments, terminal, progress.as_ref()) {
         Ok(finished) => finish(&finished, terminal, arguments.shared.quiet),
         Err(Failure::Input(message)) => {
             tell(Message::Error, &message);
@@ -44,22 +32,33 @@ pub(super) fn run(arguments: &RunArguments, terminal: Terminal) -> ExitStatus {
 }
 
 /// The work of `planish run`: the pipeline file is read and resolved, and the plan is carried out.
-fn run_pipeline(arguments: &RunArguments, _progress: &dyn Progress) -> Result<Finished, Failure> {
-    let path = &arguments.pipeline;
-    let _text = std::fs::read_to_string(path).map_err(|error| {
-        Failure::Input(format!(
-            "cannot read the pipeline file {}: {error}; check the path",
-            path.display()
-        ))
-    })?;
-    Err(Failure::Machine(
-        "this build holds no pipeline yet: nothing was measured or written".to_owned(),
-    ))
+fn run_pipeline(
+    arguments: &RunArguments,
+    terminal: Terminal,
+    progress: &dyn Progress,
+) -> Result<RunOutcome, Failure> {
+    let plan = Plan::load(&arguments.pipeline)
+        .map_err(|problems| Failure::Input(problems.render(terminal.messages_in_colour)))?;
+    if !plan.warnings.is_empty() {
+        progress.warning(plan.warnings.to_string().trim_end());
+    }
+    let options = RunOptions {
+        out: arguments
+            .shared
+            .out
+            .clone()
+            .unwrap_or_else(|| plan.default_output()),
+        threads: arguments.shared.thread_count(),
+    };
+    let outcome =
+        pipeline::run(&plan, &options, progress).map_err(|error| Failure::Machine(error.to_string()))?;
+    progress.note(&format!("results are in {}", options.out.display()));
+    Ok(outcome)
 }
 
 /// Prints the summary and what went wrong, and gives the status of the whole.
 #[must_use]
-pub fn finish(finished: &Finished, terminal: Terminal, quiet: bool) -> ExitStatus {
+pub fn finish(finished: &RunOutcome, terminal: Terminal, quiet: bool) -> ExitStatus {
     let mut status = ExitStatus::Done;
     if !quiet {
         let tables: Vec<String> = finished

@@ -11,6 +11,8 @@ pub struct Terminal {
     pub summary: SummaryStyle,
     /// Whether stderr is a terminal.
     pub interactive: bool,
+    /// Whether messages on stderr may be coloured.
+    pub messages_in_colour: bool,
 }
 
 impl Terminal {
@@ -23,6 +25,7 @@ impl Terminal {
         Self {
             summary: SummaryStyle { width, colour },
             interactive,
+            messages_in_colour: anstream::AutoStream::choice(&io::stderr()) != anstream::ColorChoice::Never,
         }
     }
 

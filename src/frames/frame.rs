@@ -13,6 +13,20 @@ pub struct Frame {
     pub positions: Vec<[f64; 3]>,
 }
 
+impl Frame {
+    /// A frame without atoms, to be read into.
+    #[must_use]
+    pub fn empty() -> Self {
+        Self {
+            time_ps: None,
+            cell: Cell {
+                vectors: [[0.0; 3]; 3],
+            },
+            positions: Vec::new(),
+        }
+    }
+}
+
 /// The atoms of a sheet: what the selection found on the first frame of a run.
 #[derive(Clone, Debug, PartialEq)]
 pub struct SheetAtoms {

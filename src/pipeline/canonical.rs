@@ -155,7 +155,7 @@ impl Plan {
 }
 
 /// The path from `folder` to `file`, with `/` between components, by their names alone.
-fn relative_to(folder: &Path, file: &Path) -> String {
+pub(super) fn relative_to(folder: &Path, file: &Path) -> String {
     if let Ok(below) = file.strip_prefix(folder)
         && below.is_relative()
     {

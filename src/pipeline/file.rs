@@ -7,10 +7,10 @@ use toml::de::{DeTable, Error};
 use super::diagnostics::{Diagnostic, Diagnostics};
 use super::gate::{GateLimit, read_gate};
 use super::keys;
-use super::plan::Positions;
 use super::table_reader::{TableReader, Written};
 use crate::fits::PlateModel;
 use crate::frames::{CellAxis, EngineUnits};
+use crate::sheet::Positions;
 
 /// A pipeline file as written. What is absent, or was reported as wrong, is `None`. Quantities are in the program's units.
 #[derive(Clone, Debug, Default, PartialEq)]

@@ -9,6 +9,7 @@ use super::keys::{Bound, GATE_LIMIT, Kind};
 use super::table_reader::TableReader;
 use super::wording::nearest;
 use crate::fits::Verdict;
+use crate::parameters::{PARAMETER_NAMES, look_up};
 use crate::units::Dimension;
 
 /// What every value of one parameter must meet.
@@ -36,51 +37,14 @@ pub enum ErrorLimit {
     Relative(f64),
 }
 
-/// Names that a gate may limit, with the unit of each.
-///
-/// To be replaced by the registry of parameter names when both are in one tree; [`unit_of`] and [`names`] are the only
-/// readers.
-const PARAMETERS: &[(&str, &str)] = &[
-    ("bending_rigidity", "eV"),
-    ("bending_rigidity_bare", "eV"),
-    ("bending_rigidity_bare_slope", "eV/K"),
-    ("lattice_term", "A^2"),
-    ("youngs_modulus", "N/m"),
-    ("bulk_modulus", "N/m"),
-    ("shear_modulus", "N/m"),
-    ("youngs_modulus_bare", "N/m"),
-    ("youngs_modulus_bare_slope", "N/m/K"),
-    ("poisson_ratio", "1"),
-    ("poisson_ratio_bare", "1"),
-    ("stiffness_11", "N/m"),
-    ("stiffness_22", "N/m"),
-    ("stiffness_12", "N/m"),
-    ("stiffness_66", "N/m"),
-    ("stiffness_16", "N/m"),
-    ("stiffness_26", "N/m"),
-    ("area_per_atom", "A^2"),
-    ("excess_area", "1"),
-    ("rms_slope", "1"),
-    ("normal_order", "1"),
-    ("thermal_expansion", "1/K"),
-    ("tension", "N/m"),
-    ("areal_density", "kg/m^2"),
-    ("thermal_length", "A"),
-    ("crossover_tension", "N/m"),
-    ("foppl_von_karman", "1"),
-    ("scaling_exponent_eta", "1"),
-    ("scaling_exponent_eta_u", "1"),
-    ("stress_exponent", "1"),
-];
-
 /// The unit in which a parameter of this name is written; `None` for no known name.
 fn unit_of(name: &str) -> Option<&'static str> {
-    PARAMETERS.iter().find(|row| row.0 == name).map(|row| row.1)
+    look_up(name).map(|row| row.unit)
 }
 
 /// Every name that a gate may limit.
 fn names() -> Vec<&'static str> {
-    PARAMETERS.iter().map(|row| row.0).collect()
+    PARAMETER_NAMES.iter().map(|row| row.name).collect()
 }
 
 /// Reads `[gate]`, in the order of the file.
@@ -190,14 +154,20 @@ fn read_error(reader: &mut TableReader<'_, '_>, unit: &str) -> Option<ErrorLimit
 
 #[cfg(test)]
 mod tests {
-    use super::{PARAMETERS, unit_of};
+    use super::unit_of;
+    use crate::parameters::PARAMETER_NAMES;
     use crate::units::Dimension;
 
     #[test]
     fn every_parameter_has_a_dimension() {
-        for (name, unit) in PARAMETERS {
-            assert_eq!(unit_of(name), Some(*unit));
-            assert!(Dimension::of_unit(unit).is_some(), "{name} in {unit}");
+        for row in PARAMETER_NAMES {
+            assert_eq!(unit_of(row.name), Some(row.unit));
+            assert!(
+                Dimension::of_unit(row.unit).is_some(),
+                "{} in {}",
+                row.name,
+                row.unit
+            );
         }
     }
 }

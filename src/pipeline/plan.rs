@@ -2,7 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
-use serde::{Deserialize, Serialize};
+use serde::Serialize;
 
 use super::diagnostics::{Diagnostic, Diagnostics};
 use super::file::PipelineFile;
@@ -10,6 +10,7 @@ use super::gate::GateLimit;
 use super::resolve::resolve;
 use crate::fits::FitOptions;
 use crate::frames::RunInput;
+use crate::sheet::Positions;
 
 /// Everything the job is to do. Quantities are in the program's units, paths can be opened from the current folder.
 #[derive(Clone, Debug, PartialEq)]
@@ -61,17 +62,6 @@ pub struct RunPlan {
 pub struct ProjectOptions {
     /// Where in the plane heights stand.
     pub positions: Positions,
-}
-
-/// Where in the plane heights stand.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
-#[serde(rename_all = "lowercase")]
-pub enum Positions {
-    /// At the reference sites: heights of material points.
-    #[default]
-    Reference,
-    /// At each frame's own positions.
-    Instantaneous,
 }
 
 /// `[stage.spectrum]`.

@@ -1,0 +1,363 @@
+//! Measuring one run: read its frames once, project and measure them block by block, on as many threads as there are.
+
+use std::sync::Mutex;
+use std::sync::mpsc::{Receiver, SyncSender, sync_channel};
+
+use serde::{Deserialize, Serialize};
+
+use super::progress::Progress;
+use super::run_error::RunProblem;
+use crate::frames::{Frame, RunFrames, RunInput, SheetAtoms};
+use crate::measurements::{BlockRecord, History, OpenBlock};
+use crate::sheet::{Positions, Projection, ProjectionScratch, reference_frame_indices};
+
+/// What decides how a run is measured, besides its files.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
+pub struct MeasureOptions {
+    /// Where heights are taken to be.
+    pub positions: Positions,
+    /// Modes wanted beyond the first zone, up to this length in 1/A.
+    pub q_max: Option<f64>,
+    /// Frames in a block.
+    pub block_frames: usize,
+}
+
+/// A run as measured: its records, and what the frames said of the sheet.
+#[derive(Clone, Debug, PartialEq)]
+pub struct MeasuredRun {
+    /// Records of all blocks.
+    pub history: History,
+    /// The sheet behind them.
+    pub facts: SheetFacts,
+}
+
+/// What is known of the sheet and its files after measuring.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+pub struct SheetFacts {
+    /// Atoms of the sheet.
+    pub atoms: usize,
+    /// Their mass in g/mol, where known.
+    pub mass: Option<f64>,
+    /// Number of atomic planes.
+    pub planes: usize,
+    /// Primitive cells in the periodic cell; `None` where the sites have no lattice.
+    pub primitive_cells: Option<usize>,
+    /// How modes were computed.
+    pub transform: String,
+    /// Mean height of the cell along its normal in A, which turns a pressure into a tension.
+    pub cell_height: f64,
+    /// Frames in the files, before `from`, `to` and `stride`.
+    pub frames_in_files: usize,
+    /// The first frame in which an atom had left its site, and the atom, as a phrase.
+    pub first_hop: Option<String>,
+    /// What reading has to say.
+    pub notes: Vec<String>,
+}
+
+/// Blocks in flight between reader and workers, for each worker: bounds memory, whatever the length of the run.
+const QUEUE_PER_WORKER: usize = 2;
+
+/// Which run is being measured, for progress and messages.
+#[derive(Clone, Copy, Debug)]
+pub struct RunLabel<'a> {
+    /// Name of its sheet.
+    pub sheet: &'a str,
+    /// Its own name.
+    pub run: &'a str,
+}
+
+/// A block of frames on its way to a worker.
+struct Batch {
+    index: usize,
+    first_frame: usize,
+    frames: Vec<Frame>,
+}
+
+/// What became of a block.
+struct Outcome {
+    record: BlockRecord,
+    /// Frame (counted among the kept ones) and atom of the first hop in the block.
+    first_hop: Option<(usize, usize)>,
+}
+
+/// Measures a run on `threads` threads. Blocks are fixed runs of frames and each is measured on its own, so the records
+/// do not depend on the number of threads.
+///
+/// # Errors
+/// Where a file cannot be read or the atoms make no sheet that can be projected; the first such frame is named.
+pub fn measure_run(
+    label: RunLabel<'_>,
+    input: &RunInput,
+    options: &MeasureOptions,
+    threads: usize,
+    progress: &dyn Progress,
+) -> Result<MeasuredRun, RunProblem> {
+    let mut frames = RunFrames::open(input)?;
+    let atoms = frames.atoms().clone();
+    let projection = project_reference(&mut frames, &atoms, input, options)?;
+    progress.run_started(label.sheet, label.run, frames.len());
+    let outcomes = if threads <= 1 {
+        measure_in_line(
+            &mut frames,
+            &projection,
+            options.block_frames,
+            atoms.indices.len(),
+            progress,
+        )?
+    } else {
+        measure_in_parallel(&mut frames, &projection, options.block_frames, threads, progress)?
+    };
+
+    let first_hop = outcomes
+        .iter()
+        .find_map(|outcome| outcome.first_hop)
+        .map(|(frame, atom)| {
+            format!(
+                "{}: atom {} left its site",
+                frames.place(frame),
+                atoms.indices[atom] + 1
+            )
+        });
+    let facts = SheetFacts {
+        atoms: atoms.indices.len(),
+        mass: atoms.masses.as_ref().map(|masses| masses.iter().sum()),
+        planes: projection.planes().count(),
+        primitive_cells: projection.lattice().map(|lattice| lattice.cells),
+        transform: projection.transform_name().to_owned(),
+        cell_height: projection.reference().cell.height(),
+        frames_in_files: frames.source_len(),
+        first_hop,
+        notes: frames.notes().iter().map(ToString::to_string).collect(),
+    };
+    let history = History {
+        modes: projection.modes().clone(),
+        frame_interval_ps: frames.frame_interval_ps(),
+        first_time_ps: frames.first_time_ps(),
+        blocks: outcomes.into_iter().map(|outcome| outcome.record).collect(),
+    };
+    Ok(MeasuredRun { history, facts })
+}
+
+/// Reads the reference frames and finds the sheet in them.
+fn project_reference(
+    frames: &mut RunFrames,
+    atoms: &SheetAtoms,
+    input: &RunInput,
+    options: &MeasureOptions,
+) -> Result<Projection, RunProblem> {
+    let indices = reference_frame_indices(frames.len());
+    let mut reference = Vec::with_capacity(indices.len());
+    for &index in &indices {
+        let mut frame = Frame::empty();
+        frames.read(index, &mut frame)?;
+        reference.push(frame);
+    }
+    if reference.is_empty() {
+        return Err(RunProblem::NoFrames {
+            found: frames.source_len(),
+        });
+    }
+    Projection::new(&reference, atoms, input.normal, options.positions, options.q_max).map_err(|problem| {
+        RunProblem::Sheet {
+            place: frames.place(indices[0]).to_string(),
+            problem,
+        }
+    })
+}
+
+/// Reads, projects and measures in turn on the calling thread.
+fn measure_in_line(
+    frames: &mut RunFrames,
+    projection: &Projection,
+    block_frames: usize,
+    atoms: usize,
+    progress: &dyn Progress,
+) -> Result<Vec<Outcome>, RunProblem> {
+    let mut scratch = ProjectionScratch::default();
+    let mut outcomes = Vec::new();
+    let mut frame = Frame::empty();
+    for first in (0..frames.len()).step_by(block_frames) {
+        let last = (first + block_frames).min(frames.len());
+        let mut block = BlockInProgress::new(projection);
+        for index in first..last {
+            frames.read(index, &mut frame)?;
+            block
+                .observe(index, &frame, &mut scratch)
+                .map_err(|fault| fault.at(frames))?;
+            progress.frames_done(1, atoms);
+        }
+        outcomes.push(block.close());
+    }
+    Ok(outcomes)
+}
+
+/// Reads on the calling thread while workers project and measure whole blocks; results are put in order of the blocks.
+fn measure_in_parallel(
+    frames: &mut RunFrames,
+    projection: &Projection,
+    block_frames: usize,
+    threads: usize,
+    progress: &dyn Progress,
+) -> Result<Vec<Outcome>, RunProblem> {
+    let blocks = frames.len().div_ceil(block_frames);
+    let workers = threads.min(blocks).max(1);
+    let results: Mutex<Vec<Option<Result<Outcome, Fault>>>> =
+        Mutex::new(std::iter::repeat_with(|| None).take(blocks).collect());
+    let (to_workers, from_reader) = sync_channel::<Batch>(QUEUE_PER_WORKER * workers);
+    let (spent, reusable) = sync_channel::<Vec<Frame>>(2 * QUEUE_PER_WORKER * workers);
+    let from_reader = Mutex::new(from_reader);
+
+    let reading = std::thread::scope(|scope| {
+        for _ in 0..workers {
+            let spent = spent.clone();
+            let (from_reader, results) = (&from_reader, &results);
+            scope.spawn(move || work(projection, from_reader, &spent, results, progress));
+        }
+        let reading = read_batches(frames, block_frames, &to_workers, &reusable, &results);
+        // The channel closes here, which ends the workers once it is empty.
+        drop(to_workers);
+        reading
+    });
+
+    let results = results
+        .into_inner()
+        .unwrap_or_else(std::sync::PoisonError::into_inner);
+    let mut outcomes = Vec::with_capacity(blocks);
+    for result in results {
+        match result {
+            Some(Ok(outcome)) => outcomes.push(outcome),
+            Some(Err(fault)) => return Err(fault.at(frames)),
+            // Reading stopped before this block: at a fault in an earlier one, or because a frame could not be read.
+            None => break,
+        }
+    }
+    reading.map(|()| outcomes)
+}
+
+/// Sends every block to the workers, in order; stops early when one of them has met a fault.
+fn read_batches(
+    frames: &mut RunFrames,
+    block_frames: usize,
+    to_workers: &SyncSender<Batch>,
+    reusable: &Receiver<Vec<Frame>>,
+    results: &Mutex<Vec<Option<Result<Outcome, Fault>>>>,
+) -> Result<(), RunProblem> {
+    for (index, first) in (0..frames.len()).step_by(block_frames).enumerate() {
+        let faulty = results
+            .lock()
+            .is_ok_and(|results| results.iter().any(|result| matches!(result, Some(Err(_)))));
+        if faulty {
+            break;
+        }
+        let mut batch = reusable.try_recv().unwrap_or_default();
+        let count = block_frames.min(frames.len() - first);
+        batch.resize_with(count, Frame::empty);
+        for (frame, number) in batch.iter_mut().zip(first..) {
+            frames.read(number, frame)?;
+        }
+        // Workers only stop listening when they panic, and the scope passes that on.
+        if to_workers
+            .send(Batch {
+                index,
+                first_frame: first,
+                frames: batch,
+            })
+            .is_err()
+        {
+            break;
+        }
+    }
+    Ok(())
+}
+
+/// One worker: takes blocks until the reader has no more.
+fn work(
+    projection: &Projection,
+    from_reader: &Mutex<Receiver<Batch>>,
+    spent: &SyncSender<Vec<Frame>>,
+    results: &Mutex<Vec<Option<Result<Outcome, Fault>>>>,
+    progress: &dyn Progress,
+) {
+    let mut scratch = ProjectionScratch::default();
+    loop {
+        let batch = from_reader.lock().ok().and_then(|receiver| receiver.recv().ok());
+        let Some(Batch {
+            index,
+            first_frame,
+            frames,
+        }) = batch
+        else {
+            return;
+        };
+        let mut block = BlockInProgress::new(projection);
+        let mut fault = None;
+        for (number, frame) in (first_frame..).zip(&frames) {
+            if let Err(found) = block.observe(number, frame, &mut scratch) {
+                fault = Some(found);
+                break;
+            }
+            progress.frames_done(1, frame.positions.len());
+        }
+        if let Ok(mut results) = results.lock() {
+            results[index] = Some(fault.map_or_else(|| Ok(block.close()), Err));
+        }
+        // Full or closed: the frames are simply freed.
+        let _ = spent.try_send(frames);
+    }
+}
+
+/// A frame that cannot be projected.
+struct Fault {
+    frame: usize,
+    problem: crate::sheet::SheetError,
+}
+
+impl Fault {
+    fn at(self, frames: &RunFrames) -> RunProblem {
+        RunProblem::Sheet {
+            place: frames.place(self.frame).to_string(),
+            problem: self.problem,
+        }
+    }
+}
+
+/// A block being measured.
+struct BlockInProgress<'a> {
+    projection: &'a Projection,
+    open: OpenBlock,
+    first_hop: Option<(usize, usize)>,
+}
+
+impl<'a> BlockInProgress<'a> {
+    fn new(projection: &'a Projection) -> Self {
+        Self {
+            projection,
+            open: OpenBlock::new(projection.modes()),
+            first_hop: None,
+        }
+    }
+
+    fn observe(
+        &mut self,
+        number: usize,
+        frame: &Frame,
+        scratch: &mut ProjectionScratch,
+    ) -> Result<(), Fault> {
+        let surface = self.projection.surface(frame, scratch).map_err(|problem| Fault {
+            frame: number,
+            problem,
+        })?;
+        if let (None, Some(atom)) = (self.first_hop, surface.hopped) {
+            self.first_hop = Some((number, atom));
+        }
+        self.open.observe(&surface);
+        Ok(())
+    }
+
+    fn close(self) -> Outcome {
+        Outcome {
+            record: self.open.close(),
+            first_hop: self.first_hop,
+        }
+    }
+}
