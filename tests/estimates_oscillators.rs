@@ -31,10 +31,12 @@ fn wave_vector([x, y]: [i32; 2]) -> f64 {
     std::f64::consts::TAU / SIDE * f64::from(x * x + y * y).sqrt()
 }
 
-/// One planted case: correlation of h from frame to frame and |mean h|, per mode.
+/// One planted case: rho_h(k) = correlation^k cos(k angle), <|h|^2> and mean h, per mode.
 struct Case<'a> {
     modes: &'a ModeSet,
     correlation: &'a dyn Fn(f64) -> f64,
+    /// Phase in radians by which h oscillates from frame to frame, at |q|.
+    angle: &'a dyn Fn(f64) -> f64,
     power: &'a dyn Fn(f64) -> f64,
     ripple: &'a dyn Fn(usize) -> f64,
     block_frames: usize,
@@ -47,13 +49,21 @@ fn mint(case: &Case<'_>, random: &mut Xoshiro256PlusPlus) -> History {
     let mut normal = || -> f64 { StandardNormal.sample(random) };
     let mut complex = || Complex64::new(normal(), normal()) * std::f64::consts::FRAC_1_SQRT_2;
     let q: Vec<f64> = case.modes.integers.iter().map(|&m| wave_vector(m)).collect();
-    let mut state: Vec<Complex64> = (0..count).map(|_| complex()).collect();
+    // Two counter-rotating Ornstein-Uhlenbeck processes make a damped standing wave.
+    let mut state: Vec<[Complex64; 2]> = (0..count).map(|_| [complex(), complex()]).collect();
     let mut heights = Array2::<Complex64>::zeros((case.frames, count));
     for frame in 0..case.frames {
         for m in 0..count {
             let phi = (case.correlation)(q[m]);
-            state[m] = state[m] * phi + complex() * (1.0 - phi * phi).sqrt();
-            heights[[frame, m]] = state[m] * (case.power)(q[m]).sqrt() + (case.ripple)(m);
+            let turn = Complex64::from_polar(phi, (case.angle)(q[m]));
+            let noise = (1.0 - phi * phi).sqrt();
+            let [left, right] = state[m];
+            state[m] = [
+                left * turn + complex() * noise,
+                right * turn.conj() + complex() * noise,
+            ];
+            let wave = (state[m][0] + state[m][1]) * std::f64::consts::FRAC_1_SQRT_2;
+            heights[[frame, m]] = wave * (case.power)(q[m]).sqrt() + (case.ripple)(m);
         }
     }
     let mut strain = || 1e-3 * normal();
@@ -151,46 +161,56 @@ fn estimates(case: &Case<'_>, random: &mut Xoshiro256PlusPlus) -> RunEstimates {
     RunEstimates::from_history(&mint(case, random), facts()).unwrap()
 }
 
-/// Effective samples of long waves (series) and of the others (block sums), the same within 10 % of the closed form on average.
+/// Effective samples of long waves (series) and of the others (block sums), within 10 % of the closed form on average.
 ///
-/// With rho_h(k) = phi^k the autocorrelation of |h|^2 is phi^(2 k) (Gaussian fourth moments), so g = (1 + phi^2)/(1 - phi^2).
+/// The autocorrelation of |h|^2 is rho_h^2 (Gaussian fourth moments): g = 1 + 2 sum_k phi^(2 k) cos^2(k angle). The cases:
+/// overdamped, with |h|^2 from 2 ps at the smallest q down; and underdamped at 1/ps, with several turns between frames at large q.
 #[test]
 fn effective_samples_are_right_on_average() {
     let modes = modes(8);
     let mut random = Xoshiro256PlusPlus::seed_from_u64(11);
-    // Overdamped: rate 2 omega^2/g of |h|^2 grows with q, here from 2 ps at the smallest q to a tenth of it.
-    let correlation = |q: f64| (-INTERVAL / 2.0 * (1.0 + q) * 0.5).exp();
-    let case = Case {
-        modes: &modes,
-        correlation: &correlation,
-        power: &|q| 1e-3 / q.powi(4),
-        ripple: &|_| 0.0,
-        block_frames: 16,
-        frames: 301,
-    };
-    let sets = 40;
-    let mut ratios = vec![0.0; modes.len()];
-    let mut power = 0.0;
-    for _ in 0..sets {
-        let run = estimates(&case, &mut random);
-        for (m, mode) in run.spectrum.modes.iter().enumerate() {
-            let phi2 = correlation(mode.length).powi(2);
-            let truth = run.frames as f64 * (1.0 - phi2) / (1.0 + phi2);
-            ratios[m] += mode.effective_samples / truth / f64::from(sets);
-            power += mode.power / (1e-3 / mode.length.powi(4)) / f64::from(sets);
+    let overdamped = |q: f64| (-INTERVAL / 4.0 * (1.0 + q)).exp();
+    let underdamped = |_: f64| (-INTERVAL / 2.0).exp();
+    // omega = sqrt(kappa/rho) q^2: about 48 A^2/ps for 1 eV on 7e-7 kg/m^2.
+    let swinging = |q: f64| 48.0 * q * q * INTERVAL;
+    let still = |_: f64| 0.0;
+    let cases: [(&str, &dyn Fn(f64) -> f64, &dyn Fn(f64) -> f64); 2] = [
+        ("overdamped", &overdamped, &still),
+        ("underdamped", &underdamped, &swinging),
+    ];
+    for (name, correlation, angle) in cases {
+        let case = Case {
+            modes: &modes,
+            correlation,
+            angle,
+            power: &|q| 1e-3 / q.powi(4),
+            ripple: &|_| 0.0,
+            block_frames: 16,
+            frames: 301,
+        };
+        let sets = 40;
+        let mut ratios = vec![0.0; modes.len()];
+        let mut power = 0.0;
+        for _ in 0..sets {
+            let run = estimates(&case, &mut random);
+            for (m, mode) in run.spectrum.modes.iter().enumerate() {
+                let q = wave_vector(mode.integers);
+                let rho = |k: i32| correlation(q).powi(k) * (f64::from(k) * angle(q)).cos();
+                let g = 1.0 + 2.0 * (1..200).map(|k| rho(k).powi(2)).sum::<f64>();
+                ratios[m] += mode.effective_samples * g / run.frames as f64 / f64::from(sets);
+                power += mode.power / (1e-3 / mode.length.powi(4)) / f64::from(sets);
+            }
         }
+        let mean = |r: &[f64]| r.iter().sum::<f64>() / r.len() as f64;
+        let (long, others) = (mean(&ratios[..LONG_WAVES]), mean(&ratios[LONG_WAVES..]));
+        let power = power / modes.len() as f64;
+        println!("{name}: n over truth: long waves {long:.3}, others {others:.3}; power {power:.4}");
+        assert!(
+            (long - 1.0).abs() < 0.1 && (others - 1.0).abs() < 0.1,
+            "{name}: {long} {others}"
+        );
+        assert!((power - 1.0).abs() < 0.02, "{name}: {power}");
     }
-    let mean = |r: &[f64]| r.iter().sum::<f64>() / r.len() as f64;
-    let (long, others) = (mean(&ratios[..LONG_WAVES]), mean(&ratios[LONG_WAVES..]));
-    println!(
-        "n over truth: long waves {long:.3}, others {others:.3}; power {:.4}",
-        power / modes.len() as f64
-    );
-    assert!(
-        (long - 1.0).abs() < 0.1 && (others - 1.0).abs() < 0.1,
-        "{long} {others}"
-    );
-    assert!((power / modes.len() as f64 - 1.0).abs() < 0.02);
 }
 
 /// A row's error covers the row's true power, and rows hold modes within 1 % of their first.
@@ -201,6 +221,7 @@ fn row_errors_cover_the_truth() {
     let case = Case {
         modes: &modes,
         correlation: &|_| 0.7,
+        angle: &|_| 0.0,
         power: &|q| 1e-3 / q.powi(4),
         ripple: &|_| 0.0,
         block_frames: 16,
@@ -236,6 +257,7 @@ fn static_ripples_are_taken_out() {
     let mut case = Case {
         modes: &modes,
         correlation: &|_| 0.6,
+        angle: &|_| 0.0,
         power: &|q| 1e-3 / q.powi(4),
         ripple: &|m| if m == planted { amplitude } else { 0.0 },
         block_frames: 16,
@@ -273,6 +295,7 @@ fn strains_have_the_planted_covariance() {
     let case = Case {
         modes: &modes,
         correlation: &|_| 0.5,
+        angle: &|_| 0.0,
         power: &|q| 1e-3 / q.powi(4),
         ripple: &|_| 0.0,
         block_frames: 16,
@@ -306,6 +329,7 @@ fn replicas_pool() {
     let mut case = Case {
         modes: &modes,
         correlation: &|_| 0.5,
+        angle: &|_| 0.0,
         power: &|q| 1e-3 / q.powi(4),
         ripple: &|_| 0.0,
         block_frames: 16,
@@ -357,6 +381,7 @@ fn odd_histories_do_not_panic() {
         let case = Case {
             modes: &modes,
             correlation: &|_| 0.5,
+            angle: &|_| 0.0,
             power: &|q| 1e-3 / q.powi(4),
             ripple: &|_| 0.0,
             block_frames,

@@ -110,3 +110,31 @@ pub(super) fn estimate_strain(metric: &MetricSeries, cell: PlaneCell, temperatur
     estimate.coupled = estimate.free[0] && estimate.free[1] && s12 > COUPLED * (s11 * s22).sqrt();
     estimate
 }
+
+#[cfg(test)]
+mod tests {
+    use nalgebra::Matrix2;
+
+    use super::*;
+
+    /// On a triclinic cell the strains from scalar products are those of the matrix formula.
+    #[test]
+    fn triclinic_strains_are_the_matrix_formula() {
+        let cell = PlaneCell::from_metric(400.0, 90.0, 330.0);
+        let h0 = Matrix2::new(cell.a[0], cell.b[0], cell.a[1], cell.b[1]);
+        let gradient = Matrix2::new(1.01, 0.004, -0.002, 0.995);
+        let h = gradient * h0;
+        let product = |i: usize, j: usize| h.column(i).dot(&h.column(j));
+        let metric = MetricSeries {
+            aa: vec![product(0, 0)],
+            ab: vec![product(0, 1)],
+            bb: vec![product(1, 1)],
+        };
+        let inverse = h0.try_inverse().expect("a cell with an area");
+        let e = (inverse.transpose() * h.transpose() * h * inverse - Matrix2::identity()) * 0.5;
+        let [e1, e2, e6] = metric.strains(&cell);
+        for (found, expected) in [(e1[0], e[(0, 0)]), (e2[0], e[(1, 1)]), (e6[0], 2.0 * e[(0, 1)])] {
+            assert!((found - expected).abs() < 1e-13, "{found} against {expected}");
+        }
+    }
+}

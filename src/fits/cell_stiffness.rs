@@ -1,6 +1,6 @@
 //! Stiffness of the sheet from the fluctuations of its cell.
 
-use super::compliance::{Compliance, Functional};
+use super::compliance::Compliance;
 use super::run_condition::run_condition;
 use super::series_verdict::{Judgement, series_verdict};
 use super::{Condition, Fit, FitOptions, Fitted, FittedValue, Quantity, Verdict};
@@ -57,6 +57,7 @@ fn fit_run(run: &RunEstimates) -> Vec<Quantity> {
     if judgement.verdict == Verdict::Unusable {
         return refuse(&judgement.note);
     }
+    let condition = condition.clone();
     let compliance = Compliance::new(strain, &free, run.temperature);
     let writer = Writer {
         condition,
@@ -64,44 +65,48 @@ fn fit_run(run: &RunEstimates) -> Vec<Quantity> {
         shear_clamped: !strain.free[2],
     };
     if strain.coupled {
-        let bulk = writer.modulus("bulk_modulus", compliance.inverse_of_isotropic_strain());
         let refused = without_value(
             writer.condition.clone(),
             "the barostat moves both axes together: only the area fluctuates, which gives the bulk modulus alone",
         );
-        return vec![refused, bulk];
+        let bulk = compliance.coupled_bulk_modulus();
+        return std::iter::once(refused)
+            .chain(writer.modulus("bulk_modulus", bulk))
+            .collect();
     }
     let Some(stiffness) = compliance.stiffness() else {
-        return vec![without_value(
-            writer.condition.clone(),
-            "the covariance of the strains has no positive definite inverse: too few independent samples",
-        )];
+        return refuse(
+            "the strains' covariance has no stable inverse: too few independent samples; make the run longer",
+        );
     };
+    let place = |strain: usize| free.iter().position(|&f| f == strain);
     let mut quantities = Vec::new();
     for (name, i, j) in COMPONENTS {
-        let place = |k: usize| free.iter().position(|&f| f == k);
         if let (Some(a), Some(b)) = (place(i), place(j)) {
-            let value = stiffness.component(a, b);
-            quantities.push(if i == j {
-                writer.modulus(name, value)
+            let value = if i == j {
+                stiffness.diagonal(a)
             } else {
-                writer.signed(name, "N/m", value)
-            });
+                Some(stiffness.off_diagonal(a, b))
+            };
+            quantities.extend(writer.modulus(name, value));
         }
     }
     if strain.free[0] && strain.free[1] {
-        quantities.push(writer.modulus("youngs_modulus", compliance.inverse_of_sum(&[(0, 0, 1.0)])));
-        let area = [(0, 0, 1.0), (1, 1, 1.0), (0, 1, 2.0)];
-        quantities.push(writer.modulus("bulk_modulus", compliance.inverse_of_sum(&area)));
-        quantities.push(writer.signed("poisson_ratio", "1", compliance.poisson_ratio()));
+        quantities.extend(writer.modulus("youngs_modulus", compliance.youngs_modulus()));
+        quantities.extend(writer.modulus("bulk_modulus", compliance.bulk_modulus()));
+        quantities.extend(
+            compliance
+                .poisson_ratio()
+                .map(|ratio| writer.quantity("poisson_ratio", "1", ratio)),
+        );
     } else {
         quantities.push(without_value(
             writer.condition.clone(),
             "one of the two axes was held: Young's modulus needs both free; the free component of the stiffness stands",
         ));
     }
-    if let Some(shear) = free.iter().position(|&f| f == 2) {
-        quantities.push(writer.modulus("shear_modulus", stiffness.component(shear, shear)));
+    if let Some(shear) = place(2) {
+        quantities.extend(writer.modulus("shear_modulus", stiffness.diagonal(shear)));
     }
     quantities
 }
@@ -142,24 +147,15 @@ struct Writer {
 }
 
 impl Writer {
-    /// A positive modulus, in N/m: its logarithm is closer to normal than itself.
-    fn modulus(&self, name: &'static str, value: Functional) -> Quantity {
+    /// A value in eV/A^2 as a quantity in N/m.
+    fn modulus(&self, name: &'static str, value: Option<FittedValue>) -> Option<Quantity> {
         let unit = N_PER_M_PER_EV_PER_A2;
-        self.quantity(
-            name,
-            "N/m",
-            FittedValue::positive(value.value * unit, value.error * unit),
-        )
-    }
-
-    /// A value of either sign: N/m, or a plain number.
-    fn signed(&self, name: &'static str, unit: &'static str, value: Functional) -> Quantity {
-        let factor = if unit == "N/m" { N_PER_M_PER_EV_PER_A2 } else { 1.0 };
-        self.quantity(
-            name,
-            unit,
-            FittedValue::symmetric(value.value * factor, value.error * factor),
-        )
+        let value = value.map(|v| FittedValue {
+            value: v.value * unit,
+            error: v.error * unit,
+            interval95: v.interval95.map(|x| x * unit),
+        })?;
+        Some(self.quantity(name, "N/m", value))
     }
 
     fn quantity(&self, name: &'static str, unit: &'static str, value: FittedValue) -> Quantity {

@@ -2,15 +2,12 @@
 
 use nalgebra::DMatrix;
 
+use super::{FittedValue, NORMAL_95};
 use crate::estimates::StrainEstimate;
 use crate::units::BOLTZMANN_EV_PER_K;
 
-/// A number read from the compliance, with its standard error.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub(super) struct Functional {
-    pub(super) value: f64,
-    pub(super) error: f64,
-}
+/// The degrees of freedom n - d must exceed this for the inverse of a covariance to have a variance.
+const FEWEST_DEGREES: f64 = 4.0;
 
 /// S = (A/kB T) cov(e) over the free strains, in A^2/eV.
 pub(super) struct Compliance {
@@ -18,10 +15,10 @@ pub(super) struct Compliance {
     samples: DMatrix<f64>,
 }
 
-/// C = S^-1 in eV/A^2, corrected for the bias of an inverse.
-pub(super) struct Stiffness<'a> {
-    compliance: &'a Compliance,
+/// C = S^-1 in eV/A^2, of n effective samples, not yet corrected for the bias of an inverse.
+pub(super) struct Stiffness {
     inverse: DMatrix<f64>,
+    samples: f64,
 }
 
 impl Compliance {
@@ -40,101 +37,109 @@ impl Compliance {
         self.matrix[(a, b)]
     }
 
-    /// C = S^-1 (n - d - 2)/(n - 1): the mean of an inverse Wishart matrix is too large by the inverse of that factor (Anderson,
-    /// An Introduction to Multivariate Statistical Analysis, 3rd ed., section 7.7). `None` where S is not positive definite or
-    /// n too small.
-    pub(super) fn stiffness(&self) -> Option<Stiffness<'_>> {
-        let n = self.harmonic_samples();
-        let d = self.matrix.nrows() as f64;
-        if n <= d + 2.0 {
+    /// C = S^-1; `None` where S is not positive definite or the samples are too few for d strains.
+    pub(super) fn stiffness(&self) -> Option<Stiffness> {
+        // Harmonic mean of the products' samples: the n whose variance is the mean of theirs.
+        let samples = self.samples.len() as f64 / self.samples.map(|n| 1.0 / n).sum();
+        if samples - self.matrix.nrows() as f64 <= FEWEST_DEGREES {
             return None;
         }
-        let inverse = self.matrix.clone().cholesky()?.inverse() * ((n - d - 2.0) / (n - 1.0));
-        Some(Stiffness {
-            compliance: self,
-            inverse,
-        })
+        let inverse = self.matrix.clone().cholesky()?.inverse();
+        Some(Stiffness { inverse, samples })
     }
 
-    /// 1/(sum of weight S_ab) over the given elements (an off-diagonal weight is the sum of both): one variance, so d = 1 in
-    /// the bias correction (n - 3)/(n - 1).
-    pub(super) fn inverse_of_sum(&self, terms: &[(usize, usize, f64)]) -> Functional {
-        let sum: f64 = terms
-            .iter()
-            .map(|&(a, b, weight)| weight * self.matrix[(a, b)])
-            .sum();
-        let size = self.matrix.nrows();
-        let mut gradient = DMatrix::zeros(size, size);
-        for &(a, b, weight) in terms {
-            gradient[(a, b)] += 0.5 * weight;
-            gradient[(b, a)] += 0.5 * weight;
-        }
-        let relative = self.delta(&gradient) / sum;
-        let n = (2.0 / (relative * relative)).max(MOST_BIASED);
-        let value = (n - 3.0) / (n - 1.0) / sum;
-        Functional {
-            value,
-            error: value * inverse_error(n, 1.0),
-        }
+    /// 1/S11, the Young's modulus along axis 1, in eV/A^2.
+    pub(super) fn youngs_modulus(&self) -> Option<FittedValue> {
+        self.inverse_of_square([1.0, 0.0])
     }
 
-    /// 1/(4 S_11) where e1 and e2 are one strain: S11 + S22 + 2 S12 is then 4 S11.
-    pub(super) fn inverse_of_isotropic_strain(&self) -> Functional {
-        self.inverse_of_sum(&[(0, 0, 4.0)])
+    /// 1/(S11 + S22 + 2 S12), the bulk modulus, in eV/A^2: from the variance of e1 + e2.
+    pub(super) fn bulk_modulus(&self) -> Option<FittedValue> {
+        self.inverse_of_square([1.0, 1.0])
     }
 
-    /// -S12/S11, a regression coefficient: unbiased, its variance being the delta method's times n/(n - 3) (Student's).
-    pub(super) fn poisson_ratio(&self) -> Functional {
-        let ratio = -self.matrix[(0, 1)] / self.matrix[(0, 0)];
-        let size = self.matrix.nrows();
-        let mut gradient = DMatrix::zeros(size, size);
-        gradient[(0, 0)] = -ratio / self.matrix[(0, 0)];
-        gradient[(0, 1)] = -0.5 / self.matrix[(0, 0)];
-        gradient[(1, 0)] = gradient[(0, 1)];
-        let n = self.harmonic_samples().max(MOST_BIASED);
-        Functional {
-            value: ratio,
-            error: self.delta(&gradient) * (n / (n - 3.0)).sqrt(),
-        }
+    /// The bulk modulus where e1 and e2 are one strain: S11 + S22 + 2 S12 is then 4 S11.
+    pub(super) fn coupled_bulk_modulus(&self) -> Option<FittedValue> {
+        self.inverse_of_square([2.0, 0.0])
     }
 
-    /// Harmonic mean of the products' effective samples: the n whose variance is the mean of theirs.
-    fn harmonic_samples(&self) -> f64 {
-        1.0 / (self.samples.map(|n| 1.0 / n).sum() / self.samples.len() as f64)
+    /// 1/(w.S.w) for weights w on the first strains: the inverse of one variance.
+    fn inverse_of_square(&self, weights: [f64; 2]) -> Option<FittedValue> {
+        let used = weights.len().min(self.matrix.nrows());
+        let pairs = || (0..used).flat_map(|a| (0..used).map(move |b| (a, b)));
+        let term = |(a, b): (usize, usize)| weights[a] * weights[b] * self.matrix[(a, b)];
+        let sum: f64 = pairs().map(term).sum();
+        // Each product's share in the sum says how much its own samples count.
+        let weight: f64 = pairs().map(|p| term(p).abs()).sum();
+        let inverse_samples: f64 = pairs().map(|p| term(p).abs() / self.samples[p]).sum();
+        (sum > 0.0).then(|| inverse_variance(1.0 / sum, weight / inverse_samples, 1.0))?
     }
 
-    /// Standard error of a function with the symmetric gradient g_ab = df/dS_ab (both of a pair counted), from
-    /// Cov(S_ab, S_cd) = (S_ac S_bd + S_ad S_bc)/sqrt(n_ab n_cd), exact for Gaussian strains.
-    fn delta(&self, gradient: &DMatrix<f64>) -> f64 {
-        // With m_ab = g_ab/sqrt(n_ab), the double sum is 2 tr(m S m S).
-        let scaled = gradient.zip_map(&self.samples, |g, n| g / n.sqrt());
-        let product = &scaled * &self.matrix;
-        (2.0 * (&product * &product).trace()).max(0.0).sqrt()
+    /// -S12/S11: minus the regression coefficient of e2 on e1, unbiased for Gaussian strains, with variance
+    /// (S22 - S12^2/S11)/(S11 (n - 3)) (Anderson, An Introduction to Multivariate Statistical Analysis, section 4.3).
+    pub(super) fn poisson_ratio(&self) -> Option<FittedValue> {
+        let (s11, s12, s22) = (self.matrix[(0, 0)], self.matrix[(0, 1)], self.matrix[(1, 1)]);
+        let n = 1.0 / (0.5 / self.samples[(0, 1)] + 0.5 / self.samples[(0, 0)]);
+        let residual = s22 - s12 * s12 / s11;
+        let usable = residual > 0.0 && n - 1.0 > FEWEST_DEGREES;
+        usable.then(|| FittedValue::symmetric(-s12 / s11, (residual / s11 / (n - 3.0)).sqrt()))
     }
 }
 
-/// Below so many samples the corrections' denominators lose their meaning; values with fewer than 5 are not given at all.
-const MOST_BIASED: f64 = 5.0;
+impl Stiffness {
+    /// C_aa in eV/A^2: the inverse of the variance that strain a keeps when the others are held, n - d degrees of freedom.
+    pub(super) fn diagonal(&self, a: usize) -> Option<FittedValue> {
+        inverse_variance(self.inverse[(a, a)], self.samples, self.inverse.nrows() as f64)
+    }
 
-/// Relative standard error of the inverse of a sample variance, sqrt(2/(n - d)): that of its logarithm for n - d degrees of
-/// freedom (trigamma(v/2) = 2/v to leading order).
-fn inverse_error(n: f64, d: f64) -> f64 {
-    (2.0 / (n - d).max(1.0)).sqrt()
+    /// C_ab in eV/A^2, a and b different: S^-1 (n - d - 2)/(n - 1), the mean of an inverse Wishart matrix, whose variance is
+    /// ((k + 1) C_ab^2 + (k - 1) C_aa C_bb)/(k (k - 3)) with k = n - d - 1 (Anderson, An Introduction to Multivariate
+    /// Statistical Analysis, section 7.7; von Rosen, Scand. J. Statist. 15, 97 (1988)). With the measured C in place of the
+    /// true one that is too large by (k - 1)/(k - 3), the excess of the mean of C_aa^2 over C_aa squared.
+    pub(super) fn off_diagonal(&self, a: usize, b: usize) -> FittedValue {
+        let k = self.samples - self.inverse.nrows() as f64 - 1.0;
+        let c = |i: usize, j: usize| self.inverse[(i, j)] * (k - 1.0) / (self.samples - 1.0);
+        let variance = ((k + 1.0) * c(a, b).powi(2) + (k - 1.0) * c(a, a) * c(b, b)) / (k * (k - 1.0));
+        FittedValue::symmetric(c(a, b), variance.sqrt())
+    }
 }
 
-impl Stiffness<'_> {
-    /// C_ab in eV/A^2, with the delta-method error times n/(n - d): the samples left after d strains are fitted.
-    pub(super) fn component(&self, a: usize, b: usize) -> Functional {
-        let size = self.inverse.nrows();
-        // dC_ab/dS_cd = -C_ac C_db, symmetrised.
-        let gradient = DMatrix::from_fn(size, size, |c, d| {
-            0.5 * (self.inverse[(a, c)] * self.inverse[(d, b)] + self.inverse[(a, d)] * self.inverse[(c, b)])
-        });
-        let n = self.compliance.harmonic_samples();
-        let left = (n - size as f64).max(1.0);
-        Functional {
-            value: self.inverse[(a, b)],
-            error: self.compliance.delta(&gradient) * (n / left).sqrt(),
+/// The inverse of a variance from n samples with v = n - d degrees of freedom, `raw` being the inverse as measured.
+///
+/// The truth is raw chi^2_v/(n - 1). So raw (v - 2)/(n - 1) is unbiased, with relative standard deviation
+/// sqrt(2/(v - 4)), and the 95 % interval follows from the quantiles of chi^2. It is not centred on the value: a small sample
+/// more often shows too little variance than too much. `None` where v <= 4.
+fn inverse_variance(raw: f64, samples: f64, strains: f64) -> Option<FittedValue> {
+    let degrees = samples - strains;
+    if degrees <= FEWEST_DEGREES {
+        return None;
+    }
+    let scale = raw / (samples - 1.0);
+    let value = scale * (degrees - 2.0);
+    Some(FittedValue {
+        value,
+        error: value * (2.0 / (degrees - 4.0)).sqrt(),
+        interval95: [-NORMAL_95, NORMAL_95].map(|z| scale * chi_square_quantile(degrees, z)),
+    })
+}
+
+/// Quantile of chi^2 at the normal deviate z: v (1 - 2/(9 v) + z sqrt(2/(9 v)))^3 (Wilson and Hilferty, Proc. Natl. Acad.
+/// Sci. 17, 684 (1931)); within 1 % for v > 5 at 95 %.
+fn chi_square_quantile(degrees: f64, z: f64) -> f64 {
+    let ninth = 2.0 / (9.0 * degrees);
+    degrees * (1.0 - ninth + z * ninth.sqrt()).powi(3)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Percentage points of chi^2 (Abramowitz and Stegun, table 26.8): 0.025 and 0.975 quantiles at 10 and 30 degrees.
+    #[test]
+    fn chi_square_quantiles_are_the_tables() {
+        for (degrees, low, high) in [(10.0, 3.24697, 20.4831), (30.0, 16.7908, 46.9792)] {
+            assert!((chi_square_quantile(degrees, -NORMAL_95) / low - 1.0_f64).abs() < 0.01);
+            assert!((chi_square_quantile(degrees, NORMAL_95) / high - 1.0_f64).abs() < 0.01);
         }
     }
 }
