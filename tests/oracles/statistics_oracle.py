@@ -3,7 +3,7 @@
     python tests/oracles/statistics_oracle.py > tests/oracles/statistics_oracle.json
 
 Needs numpy and emcee (a general Markov-chain Monte Carlo library). emcee's "integrated time" is 1 + 2 sum rho_k, the
-statistical inefficiency g = 2 tau, and its window is c g: Sokal's 5 tau is c = 2.5 there. Series are written as integers, in thousandths.
+statistical inefficiency g = 2 tau, and its window is c g: a window of 8 tau is c = 4 there. Series are written as integers, in thousandths.
 """
 
 import json
@@ -35,7 +35,7 @@ result = {
 }
 for coefficients, seed in CASES:
     series = autoregression(coefficients, seed)
-    g = float(emcee.autocorr.integrated_time(series.astype(float), c=2.5, quiet=True)[0])
+    g = float(emcee.autocorr.integrated_time(series.astype(float), c=4, quiet=True)[0])
     result["cases"].append(
         {
             "coefficients": coefficients,
