@@ -1,150 +1,14 @@
 //! Histories minted from Ornstein-Uhlenbeck modes whose relaxation, power, cell and strains are known in closed form:
 //! effective samples, rows, static ripples, strains, pooling, and the shapes of history that must not panic.
 
-use ndarray::Array2;
-use num_complex::Complex64;
+mod minted_histories;
+
+use minted_histories::{Case, INTERVAL, OfWave, SIDE, mint, modes, wave_vector};
 use planish::estimates::{EstimateError, RunEstimates, RunFacts, Tension, pool};
-use planish::measurements::{BlockRecord, History, ModeSums, Record, Series};
-use planish::sheet::{LONG_WAVES, ModeSet};
+use planish::measurements::BlockRecord;
+use planish::sheet::LONG_WAVES;
 use rand::SeedableRng;
-use rand_distr::{Distribution, StandardNormal};
 use rand_xoshiro::Xoshiro256PlusPlus;
-
-const INTERVAL: f64 = 0.4;
-const SIDE: f64 = 52.0;
-
-/// Modes of a square cell with |m| up to `most`, sorted by |q|.
-fn modes(most: i32) -> ModeSet {
-    let mut integers: Vec<[i32; 2]> = (0..=most)
-        .flat_map(|x| (-most..=most).map(move |y| [x, y]))
-        .filter(|&[x, y]| (x > 0 || y > 0) && x * x + y * y <= most * most)
-        .collect();
-    integers.sort_by_key(|&[x, y]| (x * x + y * y, x, y));
-    let zone_weight = vec![1.0; integers.len()];
-    ModeSet {
-        integers,
-        zone_weight,
-    }
-}
-
-fn wave_vector([x, y]: [i32; 2]) -> f64 {
-    std::f64::consts::TAU / SIDE * f64::from(x * x + y * y).sqrt()
-}
-
-/// One planted case: rho_h(k) = correlation^k cos(k angle), <|h|^2> and mean h, per mode.
-struct Case<'a> {
-    modes: &'a ModeSet,
-    correlation: &'a dyn Fn(f64) -> f64,
-    /// Phase in radians by which h oscillates from frame to frame, at |q|.
-    angle: &'a dyn Fn(f64) -> f64,
-    power: &'a dyn Fn(f64) -> f64,
-    ripple: &'a dyn Fn(usize) -> f64,
-    block_frames: usize,
-    frames: usize,
-}
-
-fn mint(case: &Case<'_>, random: &mut Xoshiro256PlusPlus) -> History {
-    let count = case.modes.len();
-    let long = count.min(LONG_WAVES);
-    let mut normal = || -> f64 { StandardNormal.sample(random) };
-    let mut complex = || Complex64::new(normal(), normal()) * std::f64::consts::FRAC_1_SQRT_2;
-    let q: Vec<f64> = case.modes.integers.iter().map(|&m| wave_vector(m)).collect();
-    // Two counter-rotating Ornstein-Uhlenbeck processes make a damped standing wave.
-    let mut state: Vec<[Complex64; 2]> = (0..count).map(|_| [complex(), complex()]).collect();
-    let mut heights = Array2::<Complex64>::zeros((case.frames, count));
-    for frame in 0..case.frames {
-        for m in 0..count {
-            let phi = (case.correlation)(q[m]);
-            let turn = Complex64::from_polar(phi, (case.angle)(q[m]));
-            let noise = (1.0 - phi * phi).sqrt();
-            let [left, right] = state[m];
-            state[m] = [
-                left * turn + complex() * noise,
-                right * turn.conj() + complex() * noise,
-            ];
-            let wave = (state[m][0] + state[m][1]) * std::f64::consts::FRAC_1_SQRT_2;
-            heights[[frame, m]] = wave * (case.power)(q[m]).sqrt() + (case.ripple)(m);
-        }
-    }
-    let mut strain = || 1e-3 * normal();
-    let cells: Vec<[f64; 2]> = (0..case.frames)
-        .map(|_| [SIDE * (1.0 + strain()), SIDE * (1.0 + strain())])
-        .collect();
-    let mut blocks = Vec::new();
-    let mut start = 0;
-    while start < case.frames {
-        let end = (start + case.block_frames).min(case.frames);
-        blocks.push(block(&heights, &cells, start..end, long));
-        start = end;
-    }
-    History {
-        modes: case.modes.clone(),
-        frame_interval_ps: Some(INTERVAL),
-        first_time_ps: Some(0.0),
-        blocks,
-    }
-}
-
-fn block(
-    heights: &Array2<Complex64>,
-    cells: &[[f64; 2]],
-    range: std::ops::Range<usize>,
-    long: usize,
-) -> BlockRecord {
-    let frames = range.len();
-    let start = range.start;
-    let series = |names: &[&str], value: &dyn Fn(usize, usize) -> f64| Series {
-        columns: names.iter().map(|&n| n.to_owned()).collect(),
-        values: Array2::from_shape_fn((frames, names.len()), |(f, c)| value(start + f, c)),
-    };
-    let names: Vec<String> = (0..2 * long).map(|c| format!("h{c}")).collect();
-    let names: Vec<&str> = names.iter().map(String::as_str).collect();
-    let sum = |f: &dyn Fn(Complex64) -> f64| -> Vec<f64> {
-        (long..heights.ncols())
-            .map(|m| range.clone().map(|t| f(heights[[t, m]])).sum())
-            .collect()
-    };
-    let (re, im) = (sum(&|h| h.re), sum(&|h| h.im));
-    let sums = ModeSums {
-        height: re
-            .into_iter()
-            .zip(im)
-            .map(|(re, im)| Complex64::new(re, im))
-            .collect(),
-        power: sum(&|h| h.norm_sqr()),
-        power_squared: sum(&|h| h.norm_sqr().powi(2)),
-        lagged: std::array::from_fn(|_| vec![Complex64::ZERO; heights.ncols() - long]),
-    };
-    let record = |measurement: &str, series, sums| Record {
-        measurement: measurement.into(),
-        series: Some(series),
-        sums,
-    };
-    let spectrum = series(&names, &|t, c| {
-        let h = heights[[t, c / 2]];
-        if c % 2 == 0 { h.re } else { h.im }
-    });
-    BlockRecord {
-        frames,
-        records: vec![
-            record(
-                "area",
-                series(&["area_A2"], &|t, _| cells[t][0] * cells[t][1]),
-                None,
-            ),
-            record(
-                "strain",
-                series(&["aa_A2", "ab_A2", "bb_A2"], &|t, c| match c {
-                    0 => cells[t][0].powi(2),
-                    1 => 0.0,
-                    _ => cells[t][1].powi(2),
-                }),
-                None,
-            ),
-            record("spectrum", spectrum, Some(sums)),
-        ],
-    }
-}
 
 fn facts() -> RunFacts {
     RunFacts {
@@ -174,7 +38,7 @@ fn effective_samples_are_right_on_average() {
     // omega = sqrt(kappa/rho) q^2: about 48 A^2/ps for 1 eV on 7e-7 kg/m^2.
     let swinging = |q: f64| 48.0 * q * q * INTERVAL;
     let still = |_: f64| 0.0;
-    let cases: [(&str, &dyn Fn(f64) -> f64, &dyn Fn(f64) -> f64); 2] = [
+    let cases: [(&str, OfWave<'_>, OfWave<'_>); 2] = [
         ("overdamped", &overdamped, &still),
         ("underdamped", &underdamped, &swinging),
     ];
@@ -204,7 +68,6 @@ fn effective_samples_are_right_on_average() {
         let mean = |r: &[f64]| r.iter().sum::<f64>() / r.len() as f64;
         let (long, others) = (mean(&ratios[..LONG_WAVES]), mean(&ratios[LONG_WAVES..]));
         let power = power / modes.len() as f64;
-        println!("{name}: n over truth: long waves {long:.3}, others {others:.3}; power {power:.4}");
         assert!(
             (long - 1.0).abs() < 0.1 && (others - 1.0).abs() < 0.1,
             "{name}: {long} {others}"
@@ -243,7 +106,6 @@ fn row_errors_cover_the_truth() {
         assert_eq!(next, modes.len());
     }
     let share = f64::from(inside) / f64::from(total);
-    println!("rows within one error: {share:.3} of {total}");
     assert!((0.60..0.74).contains(&share), "{share}");
 }
 
@@ -283,7 +145,6 @@ fn static_ripples_are_taken_out() {
         })
         .sum();
     let share = removed as f64 / (40 * modes.len()) as f64;
-    println!("removed by chance: {share:.5}");
     assert!(share < 3e-3, "{share} removed, p is 0.001");
 }
 
@@ -428,4 +289,38 @@ fn odd_histories_do_not_panic() {
             })
         ));
     }
+}
+
+/// An area that starts far off is cut with its whole blocks; every block stays in the area's record.
+#[test]
+fn equilibration_is_cut_in_whole_blocks() {
+    let modes = modes(8);
+    let mut random = Xoshiro256PlusPlus::seed_from_u64(17);
+    let case = Case {
+        modes: &modes,
+        correlation: &|_| 0.5,
+        angle: &|_| 0.0,
+        power: &|q| 1e-3 / q.powi(4),
+        ripple: &|_| 0.0,
+        block_frames: 16,
+        frames: 301,
+    };
+    let mut history = mint(&case, &mut random);
+    // Five standard deviations of the area, sqrt(2) x 1e-3 x 52^2 = 3.8 A^2, in the first three blocks.
+    for block in &mut history.blocks[..3] {
+        block.records[0].series.as_mut().unwrap().values += 19.0;
+    }
+    let run = RunEstimates::from_history(&history, facts()).unwrap();
+    assert_eq!(
+        (run.cut.frames_read, run.cut.frames_cut, run.cut.blocks_cut),
+        (301, 48, 3)
+    );
+    assert_eq!(
+        (run.frames, run.area_blocks.len(), run.spectrum.block_frames.len()),
+        (253, 19, 16)
+    );
+    assert!((run.area.value - SIDE * SIDE).abs() < 4.0 * run.area.error);
+    // The middle of block 1 is frame 23.5, and the last block holds 13 frames.
+    assert!((run.area_blocks[1].time_ps.unwrap() - 23.5 * INTERVAL).abs() < 1e-12);
+    assert_eq!(run.spectrum.block_frames[15], 13);
 }

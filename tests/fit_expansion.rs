@@ -124,7 +124,6 @@ fn errors_cover_the_planted_curve() {
             *inside += u32::from(low < true_expansion(t) && true_expansion(t) < high);
         }
     }
-    println!("95 % intervals: {inside:?} of {sets}");
     assert!(inside.iter().all(|i| (930..=970).contains(i)), "{inside:?}");
 }
 

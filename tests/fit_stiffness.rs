@@ -143,7 +143,6 @@ fn intervals_cover_the_planted_tensor() {
                 f64::from(inside95) / f64::from(sets),
                 f64::from(inside68) / f64::from(sets),
             );
-            println!("n {samples} {name}: 95 % {c95:.3}, 68 % {c68:.3}, bias {bias:+.3} errors");
             assert!((0.92..=0.98).contains(&c95), "{name} at n = {samples}: {c95}");
             assert!((0.62..=0.74).contains(&c68), "{name} at n = {samples}: {c68}");
             assert!(bias.abs() < 0.1, "{name} at n = {samples}: bias {bias}");

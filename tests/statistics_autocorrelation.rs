@@ -69,10 +69,6 @@ fn effective_samples_of_short_series_are_right_on_average() {
             })
             .sum::<f64>()
             / f64::from(sets);
-        println!(
-            "phi {phi} N {count}: n {mean:.1} truth {truth:.1} ratio {:.3}",
-            mean / truth
-        );
         assert!(
             (mean / truth - 1.0).abs() < 0.10,
             "phi {phi}: n {mean} against {truth}"
@@ -96,7 +92,6 @@ fn error_of_a_mean_covers_the_truth() {
         let blocks = weighted_block_mean(&means, &[16.0; 30], None).unwrap();
         covered[1] += i32::from(blocks.value.abs() < blocks.error);
     }
-    println!("coverage of one error: {covered:?} of {sets}");
     for covered in covered {
         assert!(
             (640..=720).contains(&covered),
@@ -166,8 +161,6 @@ fn equilibration_cut_removes_transients_alone() {
         found += i32::from(cut >= 32);
         shift += series[cut..].iter().sum::<f64>() / (800 - cut) as f64;
     }
-    println!("stationary cut {:.4}", cut_frames as f64 / f64::from(sets * 800));
-    println!("transient found {found}, mean shift {}", shift / f64::from(sets));
     assert!(
         cut_frames < sets as usize * 800 / 20,
         "{cut_frames} frames cut of stationary series"
@@ -200,7 +193,6 @@ fn pooled_blocks_give_the_long_run_variance() {
             sets += 1;
         }
         ratio /= f64::from(sets);
-        println!("pooled phi {phi} F {frames} B {count}: {ratio:.3}");
         assert!(
             (ratio - 1.0).abs() < 0.08,
             "phi {phi}, blocks of {frames}: {ratio}"

@@ -12,7 +12,7 @@ use super::{Cut, Estimate, EstimateError, SpectrumEstimate, StrainEstimate};
 use crate::measurements::History;
 use crate::theory::PlaneCell;
 
-/// Mean in-plane tension of a run, positive when it stretches, in eV/A^2 (contract, "Pipeline file").
+/// Mean in-plane tension of a run, positive when it stretches, in eV/A^2.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Tension {
     /// The pipeline states it: held exactly.

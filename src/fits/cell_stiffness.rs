@@ -57,22 +57,18 @@ fn fit_run(run: &RunEstimates) -> Vec<Quantity> {
     if judgement.verdict == Verdict::Unusable {
         return refuse(&judgement.note);
     }
-    let condition = condition.clone();
     let compliance = Compliance::new(strain, &free, run.temperature);
     let writer = Writer {
-        condition,
+        condition: condition.clone(),
         judgement,
         shear_clamped: !strain.free[2],
     };
     if strain.coupled {
-        let refused = without_value(
-            writer.condition.clone(),
+        let mut quantities = refuse(
             "the barostat moves both axes together: only the area fluctuates, which gives the bulk modulus alone",
         );
-        let bulk = compliance.coupled_bulk_modulus();
-        return std::iter::once(refused)
-            .chain(writer.modulus("bulk_modulus", bulk))
-            .collect();
+        quantities.extend(writer.modulus("bulk_modulus", compliance.coupled_bulk_modulus()));
+        return quantities;
     }
     let Some(stiffness) = compliance.stiffness() else {
         return refuse(
@@ -100,8 +96,7 @@ fn fit_run(run: &RunEstimates) -> Vec<Quantity> {
                 .map(|ratio| writer.quantity("poisson_ratio", "1", ratio)),
         );
     } else {
-        quantities.push(without_value(
-            writer.condition.clone(),
+        quantities.extend(refuse(
             "one of the two axes was held: Young's modulus needs both free; the free component of the stiffness stands",
         ));
     }
