@@ -324,3 +324,28 @@ fn equilibration_is_cut_in_whole_blocks() {
     assert!((run.area_blocks[1].time_ps.unwrap() - 23.5 * INTERVAL).abs() < 1e-12);
     assert_eq!(run.spectrum.block_frames[15], 13);
 }
+
+/// A run of more frames than are searched one by one is cut on its block means, and its blocks are joined pairwise.
+#[test]
+fn long_runs_are_cut_and_stay_bounded() {
+    let modes = modes(3);
+    let mut random = Xoshiro256PlusPlus::seed_from_u64(18);
+    let case = Case {
+        modes: &modes,
+        correlation: &|_| 0.5,
+        angle: &|_| 0.0,
+        power: &|q| 1e-3 / q.powi(4),
+        ripple: &|_| 0.0,
+        block_frames: 16,
+        frames: 20_000,
+    };
+    let mut history = mint(&case, &mut random);
+    for block in &mut history.blocks[..200] {
+        block.records[0].series.as_mut().unwrap().values += 19.0;
+    }
+    let run = RunEstimates::from_history(&history, facts()).unwrap();
+    assert!((200..210).contains(&run.cut.blocks_cut), "{:?}", run.cut);
+    assert_eq!(run.cut.frames_cut, 16 * run.cut.blocks_cut);
+    assert!(run.spectrum.block_frames.len() <= 512);
+    assert_eq!(run.spectrum.block_frames.iter().sum::<usize>(), run.frames);
+}

@@ -8,6 +8,9 @@ use crate::statistics::equilibration_cut;
 /// How many of the longest waves are watched for their approach to equilibrium.
 const WATCHED_WAVES: usize = 4;
 
+/// Longer runs are searched on block means, which is as fine as the cut can be made.
+const LONGEST_BY_FRAME: usize = 16_384;
+
 /// What was cut from the start of a run, and what is left.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub struct Cut {
@@ -50,11 +53,26 @@ pub(super) fn find_cut(
                 .cbrt()
         })
         .collect();
-    let frames_cut = equilibration_cut(area, &edges).max(equilibration_cut(&power, &edges));
+    let blocks_cut = [area, &power]
+        .map(|series| {
+            if frames_read <= LONGEST_BY_FRAME {
+                let frame = equilibration_cut(series, &edges);
+                return edges.iter().position(|&e| e == frame).unwrap_or(0);
+            }
+            let means: Vec<f64> = edges
+                .windows(2)
+                .map(|edge| series[edge[0]..edge[1]].iter().sum::<f64>() / (edge[1] - edge[0]) as f64)
+                .collect();
+            let every_block: Vec<usize> = (0..=means.len()).collect();
+            equilibration_cut(&means, &every_block)
+        })
+        .into_iter()
+        .max()
+        .unwrap_or(0);
     Ok(Cut {
         frames_read,
-        frames_cut,
-        blocks_cut: edges.iter().position(|&e| e == frames_cut).unwrap_or(0),
+        frames_cut: edges[blocks_cut],
+        blocks_cut,
         block_frames: block_frames.into_iter().max().unwrap_or(0),
     })
 }
