@@ -119,7 +119,7 @@ pub fn judge(window: &[&ModeEstimate], frames: usize) -> Judgement {
 pub fn advice(relative_error: f64, wanted_error: f64) -> Option<String> {
     (relative_error > wanted_error).then(|| {
         format!(
-            "error {:.0} %, wanted {:.0} %: run {:.1} times as long",
+            "error {:.1} %, wanted {:.1} %: run {:.1} times as long",
             100.0 * relative_error,
             100.0 * wanted_error,
             (relative_error / wanted_error).powi(2)

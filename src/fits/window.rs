@@ -41,10 +41,9 @@ pub struct ChosenWindow<F> {
 pub fn ladder(lengths: &[f64]) -> Vec<usize> {
     let mut rungs: Vec<usize> = Vec::new();
     let mut end = lengths.last().copied().unwrap_or(0.0).min(LAST_END);
-    let inside = |end: f64| lengths.partition_point(|&q| q <= end * (1.0 + 1e-9));
-    while inside(end) >= LEAST_MODES {
-        if rungs.last() != Some(&inside(end)) {
-            rungs.push(inside(end));
+    while inside(lengths, end) >= LEAST_MODES {
+        if rungs.last() != Some(&inside(lengths, end)) {
+            rungs.push(inside(lengths, end));
         }
         end /= LADDER_STEP;
     }
@@ -86,11 +85,14 @@ pub fn choose<F: WindowFit + Clone>(
     if rung + 1 == fits.len() && rung + 1 < rungs.len() {
         fits.push(fit_first(rungs[rung + 1], Some(&fit)));
     }
+    let beyond = if rung == 0 {
+        let modes = inside(lengths, LAST_END * LADDER_STEP);
+        (modes > rungs[0]).then(|| fit_first(modes, Some(&fit)))
+    } else {
+        fits.get(rung - 1).cloned()
+    };
     let change = |other: Option<&Option<F>>| Some(other?.as_ref()?.value() - fit.value());
-    let moves = [
-        change(fits.get(rung + 1)),
-        change(rung.checked_sub(1).and_then(|rung| fits.get(rung))),
-    ];
+    let moves = [change(fits.get(rung + 1)), change(beyond.as_ref())];
     Some(ChosenWindow {
         modes: rungs[rung],
         fit,
@@ -106,19 +108,23 @@ pub fn stated<F: WindowFit>(
     end: f64,
     mut fit_first: impl FnMut(usize, Option<&F>) -> Option<F>,
 ) -> Option<ChosenWindow<F>> {
-    let inside = |end: f64| lengths.partition_point(|&q| q <= end * (1.0 + 1e-9));
-    let fit = fit_first(inside(end), None)?;
+    let fit = fit_first(inside(lengths, end), None)?;
     let moves = [1.0 / LADDER_STEP, LADDER_STEP].map(|factor| {
-        let modes = inside(end * factor);
-        let other = (modes != inside(end))
+        let modes = inside(lengths, end * factor);
+        let other = (modes != inside(lengths, end))
             .then(|| fit_first(modes, Some(&fit)))
             .flatten();
         other.map(|other| other.value() - fit.value())
     });
     Some(ChosenWindow {
-        modes: inside(end),
+        modes: inside(lengths, end),
         fit,
         accepted: true,
         moves,
     })
+}
+
+/// How many of `lengths`, ascending, are at most `end`.
+fn inside(lengths: &[f64], end: f64) -> usize {
+    lengths.partition_point(|&q| q <= end * (1.0 + 1e-9))
 }

@@ -14,12 +14,13 @@
 
 use thiserror::Error;
 
+use super::clamped_cell::ClampedCell;
 use super::mode_convolution::{FieldTransform, ModeConvolution, MomentTransforms};
 use super::{BoxModes, PlateState};
 use crate::numerics::{AndersonSettings, fixed_point};
 
 /// The iteration on ln kappa stops when no mode changes by more than this.
-const SETTINGS: AndersonSettings = AndersonSettings {
+pub(super) const SETTINGS: AndersonSettings = AndersonSettings {
     depth: 8,
     tolerance: 1e-11,
     evaluations: 300,
@@ -64,10 +65,10 @@ pub fn solve(modes: &BoxModes, state: &PlateState) -> Result<BoxSolution, ScsaEr
 
 /// The equations on one set of modes, with their transforms planned.
 pub struct BoxScsa {
-    area: f64,
+    pub(super) area: f64,
     /// |q| of each mode, in 1/A.
-    lengths: Vec<f64>,
-    convolution: ModeConvolution,
+    pub(super) lengths: Vec<f64>,
+    pub(super) convolution: ModeConvolution,
 }
 
 /// kappa(q) and Y(q) of one plate in one box.
@@ -85,34 +86,12 @@ pub struct BoxSolution {
     pub evaluations: usize,
 }
 
-/// A parameter of the bare plate by which solutions are differentiated.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum PlateParameter {
-    /// ln kappa.
-    LnKappa,
-    /// ln Y.
-    LnYoungs,
-    /// The lattice term b, in A^2.
-    LatticeTerm,
-    /// The tension sigma, in eV/A^2.
-    Tension,
-}
-
-/// Derivatives of a solution with respect to one [`PlateParameter`], per unit of it.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Response {
-    /// Of ln <|h_q|^2> of each mode.
-    pub ln_power: Vec<f64>,
-    /// Of ln kappa(q) of each mode.
-    pub ln_kappa: Vec<f64>,
-}
-
 /// Everything the equations need of one iterate.
-struct Iterate {
-    moments: MomentTransforms,
-    propagator: FieldTransform,
-    youngs: Vec<f64>,
-    youngs_over_q4: FieldTransform,
+pub(super) struct Iterate {
+    pub(super) moments: MomentTransforms,
+    pub(super) propagator: FieldTransform,
+    pub(super) youngs: Vec<f64>,
+    pub(super) youngs_over_q4: FieldTransform,
     /// Sigma(k) = kappa(k) - kappa0(k).
     self_energy: Vec<f64>,
 }
@@ -139,12 +118,28 @@ impl BoxScsa {
     /// # Errors
     /// See [`ScsaError`].
     pub fn solve(&self, state: &PlateState) -> Result<BoxSolution, ScsaError> {
-        let start = self
-            .lengths
-            .iter()
-            .map(|&q| state.crossover_kappa(q).ln())
-            .collect();
-        self.solve_from(state, start)
+        self.solve_from(state, self.crossover(state), None)
+    }
+
+    /// Solves the equations of a sheet with the bare Poisson ratio `poisson` in a fixed cell, whose mean stress is the tension
+    /// of `state` (see [`super::clamped_cell`]). `modes` are those that this solver was made for.
+    ///
+    /// # Errors
+    /// See [`ScsaError`].
+    pub fn solve_clamped(
+        &self,
+        modes: &BoxModes,
+        state: &PlateState,
+        poisson: f64,
+    ) -> Result<BoxSolution, ScsaError> {
+        if poisson.is_nan() || poisson.abs() >= 1.0 {
+            return Err(ScsaError::Parameter {
+                name: "1 - nu^2 of the Poisson ratio nu",
+                value: 1.0 - poisson * poisson,
+            });
+        }
+        let cell = ClampedCell::new(modes, poisson);
+        self.solve_from(state, self.crossover(state), Some(&cell))
     }
 
     /// Solves the equations from the solution of a plate nearby, on the same modes.
@@ -158,10 +153,24 @@ impl BoxScsa {
             .zip(&near.kappa)
             .map(|(&q, kappa)| (kappa * state.bare_kappa(q) / near.state.bare_kappa(q)).ln())
             .collect();
-        self.solve_from(state, start)
+        self.solve_from(state, start, None)
     }
 
-    fn solve_from(&self, state: &PlateState, start: Vec<f64>) -> Result<BoxSolution, ScsaError> {
+    /// ln kappa(q) of the closed form, to start from.
+    fn crossover(&self, state: &PlateState) -> Vec<f64> {
+        self.lengths
+            .iter()
+            .map(|&q| state.crossover_kappa(q).ln())
+            .collect()
+    }
+
+    /// Iterates from ln kappa(q) = `start`; the cell is free, or `clamped`.
+    fn solve_from(
+        &self,
+        state: &PlateState,
+        start: Vec<f64>,
+        clamped: Option<&ClampedCell>,
+    ) -> Result<BoxSolution, ScsaError> {
         check(state)?;
         let bare: Vec<f64> = self.lengths.iter().map(|&q| state.bare_kappa(q)).collect();
         let exponential = |ln_kappa: &[f64]| -> Vec<f64> {
@@ -173,13 +182,15 @@ impl BoxScsa {
                 .collect()
         };
         let found = fixed_point(start, &SETTINGS, |ln_kappa| {
-            let iterate = self.iterate(state, &exponential(ln_kappa))?;
-            Ok(iterate
-                .self_energy
-                .iter()
-                .zip(&bare)
-                .map(|(sigma, bare)| (bare + sigma).ln())
-                .collect())
+            let kappa = exponential(ln_kappa);
+            let mut image = self.iterate(state, &kappa)?.self_energy;
+            let propagator = self.propagator(state, &kappa)?;
+            let of_cell = clamped.map(|cell| cell.self_energy(state, &propagator));
+            for (mode, sigma) in image.iter_mut().enumerate() {
+                let of_cell = of_cell.as_ref().map_or(0.0, |of_cell| of_cell[mode]);
+                *sigma = (bare[mode] + *sigma + of_cell).ln();
+            }
+            Ok(image)
         })?;
         if !found.converged(&SETTINGS) {
             return Err(ScsaError::NotConverged {
@@ -230,107 +241,8 @@ impl BoxScsa {
         Ok([kappa, youngs])
     }
 
-    /// Derivatives at a solution, from the equations differentiated implicitly.
-    ///
-    /// # Errors
-    /// [`ScsaError::NotConverged`] where the linear equations do not settle.
-    pub fn responses(
-        &self,
-        solution: &BoxSolution,
-        parameters: &[PlateParameter],
-    ) -> Result<Vec<Response>, ScsaError> {
-        let state = &solution.state;
-        let iterate = self.iterate(state, &solution.kappa)?;
-        let respond = |&parameter: &PlateParameter| {
-            let change = Change {
-                bare: self
-                    .lengths
-                    .iter()
-                    .map(|&q| bare_slope(state, parameter, q))
-                    .collect(),
-                ln_youngs: if parameter == PlateParameter::LnYoungs {
-                    1.0
-                } else {
-                    0.0
-                },
-                tension: if parameter == PlateParameter::Tension {
-                    1.0
-                } else {
-                    0.0
-                },
-            };
-            self.response(solution, &iterate, &change)
-        };
-        parameters.iter().map(respond).collect()
-    }
-
-    /// Changes of ln power and ln kappa of every mode under a small change of the bare plate.
-    fn response(
-        &self,
-        solution: &BoxSolution,
-        iterate: &Iterate,
-        change: &Change,
-    ) -> Result<Response, ScsaError> {
-        let state = &solution.state;
-        let ln_power_of = |ln_kappa: &[f64]| -> Vec<f64> {
-            let per_mode = |((&q, kappa), d): ((&f64, &f64), &f64)| {
-                -(kappa * q * q * d + change.tension) / (kappa * q * q + state.tension)
-            };
-            self.lengths
-                .iter()
-                .zip(&solution.kappa)
-                .zip(ln_kappa)
-                .map(per_mode)
-                .collect()
-        };
-        let start = vec![0.0; self.lengths.len()];
-        let settings = AndersonSettings {
-            tolerance: 1e-10 * change.size(solution),
-            ..SETTINGS
-        };
-        let found = fixed_point(start, &settings, |ln_kappa| -> Result<Vec<f64>, ScsaError> {
-            let change_of_g: Vec<f64> = ln_power_of(ln_kappa)
-                .iter()
-                .zip(&solution.power)
-                .map(|(d, power)| d * power * self.area)
-                .collect();
-            let moments = self.convolution.moments(&change_of_g);
-            // (q x p)^4 G(p) G(q - p) is symmetric in p and q - p: both factors change it alike.
-            let screening = self.screening(state, &moments, &iterate.propagator);
-            let youngs: Vec<f64> = iterate
-                .youngs
-                .iter()
-                .zip(screening)
-                .map(|(y, pi)| y * y * (change.ln_youngs / state.youngs - 2.0 * pi))
-                .collect();
-            let youngs_over_q4 = self.convolution.field(&self.over_q4(&youngs));
-            let sums = self.convolution.pair_sum(&[
-                (&moments, &iterate.youngs_over_q4),
-                (&iterate.moments, &youngs_over_q4),
-            ]);
-            let per_mode = |((sum, bare), kappa): ((&f64, &f64), &f64)| (bare + sum / self.area) / kappa;
-            Ok(self
-                .over_q4(&sums)
-                .iter()
-                .zip(&change.bare)
-                .zip(&solution.kappa)
-                .map(per_mode)
-                .collect())
-        })?;
-        if !found.converged(&settings) {
-            return Err(ScsaError::NotConverged {
-                evaluations: found.evaluations,
-                residual: found.residual,
-            });
-        }
-        Ok(Response {
-            ln_power: ln_power_of(&found.point),
-            ln_kappa: found.point,
-        })
-    }
-
     /// One evaluation of both equations.
-    fn iterate(&self, state: &PlateState, kappa: &[f64]) -> Result<Iterate, ScsaError> {
+    pub(super) fn iterate(&self, state: &PlateState, kappa: &[f64]) -> Result<Iterate, ScsaError> {
         let moments = self.convolution.moments(&self.propagator(state, kappa)?);
         let propagator = moments.propagator();
         let youngs: Vec<f64> = self
@@ -367,7 +279,7 @@ impl BoxScsa {
     }
 
     /// Pi(q) in A^2/eV of two propagators.
-    fn screening(
+    pub(super) fn screening(
         &self,
         state: &PlateState,
         moments: &MomentTransforms,
@@ -378,56 +290,12 @@ impl BoxScsa {
         self.over_q4(&sums).iter().map(|sum| sum * scale).collect()
     }
 
-    fn over_q4(&self, field: &[f64]) -> Vec<f64> {
+    pub(super) fn over_q4(&self, field: &[f64]) -> Vec<f64> {
         field
             .iter()
             .zip(&self.lengths)
             .map(|(value, q)| value / q.powi(4))
             .collect()
-    }
-}
-
-/// Derivative of kappa0(q) by a parameter of the plate.
-fn bare_slope(state: &PlateState, parameter: PlateParameter, q: f64) -> f64 {
-    /// Step of b (A^2): kappa0(q) is linear in b away from its floor, so the difference is exact.
-    const STEP: f64 = 1e-4;
-    let moved = |step: f64| {
-        let lattice_term = state.lattice_term + step;
-        PlateState {
-            lattice_term,
-            ..*state
-        }
-        .bare_kappa(q)
-    };
-    match parameter {
-        PlateParameter::LnKappa => state.bare_kappa(q),
-        PlateParameter::LatticeTerm => (moved(STEP) - moved(-STEP)) / (2.0 * STEP),
-        PlateParameter::LnYoungs | PlateParameter::Tension => 0.0,
-    }
-}
-
-/// A small change of the bare plate.
-struct Change {
-    /// Of kappa0(q) on every mode, in eV.
-    bare: Vec<f64>,
-    /// Of ln Y.
-    ln_youngs: f64,
-    /// Of the tension, in eV/A^2.
-    tension: f64,
-}
-
-impl Change {
-    /// Its largest direct effect on ln kappa or ln power: what the tolerance of the response is measured by.
-    fn size(&self, solution: &BoxSolution) -> f64 {
-        let direct = self
-            .bare
-            .iter()
-            .zip(&solution.kappa)
-            .map(|(bare, kappa)| (bare / kappa).abs());
-        let softest = solution.kappa.iter().copied().fold(f64::INFINITY, f64::min);
-        direct
-            .fold(self.ln_youngs.abs(), f64::max)
-            .max(self.tension.abs() / softest)
     }
 }
 

@@ -101,7 +101,7 @@ impl Synthetic {
     }
 }
 
-fn rows(modes: &[ModeEstimate]) -> Vec<SpectrumRow> {
+pub fn rows(modes: &[ModeEstimate]) -> Vec<SpectrumRow> {
     let mut rows = Vec::new();
     let mut first = 0;
     for end in 1..=modes.len() {
