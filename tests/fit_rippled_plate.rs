@@ -155,17 +155,27 @@ fn heights_without_ripples_give_kappa_and_no_youngs_modulus() {
         temperature: 0.1,
         ..TRUTH
     };
-    let (run, rigidity) = draw(&truth, 60.0, 3);
-    let fitted = fit(run, &options());
-    let value = named(&fitted, "bending_rigidity").value.expect("a value");
+    let (mut kept, mut missed) = (0, 0);
+    for seed in 0..12 {
+        let (run, rigidity) = draw(&truth, 60.0, seed);
+        let fitted = fit(run, &options());
+        let quantity = named(&fitted, "bending_rigidity");
+        let value = quantity.value.expect("a value");
+        assert!(
+            value.error < 0.1 * rigidity && quantity.verdict == Verdict::Good,
+            "{quantity:?}"
+        );
+        missed += i32::from(!(value.interval95[0]..=value.interval95[1]).contains(&rigidity));
+        let youngs = named(&fitted, "youngs_modulus_bare");
+        assert_eq!(youngs.value.is_none(), youngs.verdict == Verdict::Unusable);
+        kept += i32::from(youngs.value.is_some());
+    }
+    // Noise of two standard errors is rare, not impossible.
     assert!(
-        (value.value - rigidity).abs() < 3.0 * value.error,
-        "{value:?} is not {rigidity}"
+        kept <= 2,
+        "{kept} of 12 runs without ripples have a Young's modulus"
     );
-    assert!(value.error < 0.1 * rigidity);
-    let youngs = named(&fitted, "youngs_modulus_bare");
-    let honest = youngs.value.is_none_or(|value| value.error > 0.5 * value.value);
-    assert!(honest && youngs.verdict > Verdict::Good, "{youngs:?}");
+    assert!(missed <= 2, "{missed} of 12 intervals miss the rigidity");
 }
 
 #[test]

@@ -38,8 +38,8 @@ const BARE: [(&str, &str); 6] = [
     FOPPL_VON_KARMAN,
 ];
 
-/// Values of the bare plate with a larger relative error are weak.
-const WEAK_ERROR: f64 = 0.5;
+/// With a larger relative error Y lies within two errors of none, and the heights do not tell it.
+const LARGEST_YOUNGS_ERROR: f64 = 0.5;
 
 const CLAMPED: &str =
     "the cell is fixed: a clamped cell stiffens the longest waves, by some 20 % in small sheets";
@@ -149,7 +149,7 @@ fn read_out(
     };
     if judgement.verdict != Verdict::Unusable {
         fitted.plate_curves.push(plate_run.curve(chosen.modes, curve));
-        if fit.youngs_limit.is_none() && !run.cell_is_fixed() {
+        if fit.youngs_limit.is_none() && youngs_is_told(&covariance) && !run.cell_is_fixed() {
             fitted.covariances.push(bare_covariance(run, fit, &covariance));
         }
     }
@@ -247,11 +247,9 @@ fn bare_quantities(
                 .sqrt();
             let mut judgement = judgement.clone();
             youngs_reasons(&mut judgement, fit.youngs_limit, needs_youngs);
-            if fit.youngs_limit.is_none() && relative > WEAK_ERROR {
-                judgement.at_most(
-                    Verdict::Weak,
-                    format!("the heights of one run fix it to {:.0} %", 100.0 * relative),
-                );
+            if needs_youngs && fit.youngs_limit.is_none() && !youngs_is_told(covariance) {
+                let reason = "the stiffening by ripples that the heights of this run show is within two errors of none, so they do not tell Y";
+                judgement.at_most(Verdict::Unusable, reason);
             }
             let value = FittedValue::positive(value, value * relative);
             judged(
@@ -280,6 +278,14 @@ fn bare_quantities(
         ),
     );
     quantities
+}
+
+/// Whether the error of ln Y leaves a Y to speak of.
+fn youngs_is_told(covariance: &PlateCovariance) -> bool {
+    covariance
+        .variance(&DVector::from_row_slice(&[0.0, 0.0, 1.0]), 0.0)
+        .sqrt()
+        <= LARGEST_YOUNGS_ERROR
 }
 
 /// What a Y that ran into its limits means for a bare value.

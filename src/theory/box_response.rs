@@ -7,6 +7,9 @@ use super::box_scsa::{Iterate, SETTINGS};
 use super::{BoxScsa, BoxSolution, PlateState, ScsaError};
 use crate::numerics::{AndersonSettings, fixed_point};
 
+/// Derivatives are right to this share of the largest direct effect of the change: far closer than any fit needs.
+const RELATIVE_TOLERANCE: f64 = 1e-8;
+
 /// A parameter of the bare plate by which solutions are differentiated.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum PlateParameter {
@@ -85,7 +88,7 @@ impl BoxScsa {
         };
         let start = vec![0.0; self.lengths.len()];
         let settings = AndersonSettings {
-            tolerance: 1e-10 * change.size(solution),
+            tolerance: RELATIVE_TOLERANCE * change.size(solution),
             ..SETTINGS
         };
         let found = fixed_point(start, &settings, |ln_kappa| -> Result<Vec<f64>, ScsaError> {
