@@ -89,3 +89,59 @@ fn rings_of(samples: &[ModeSample]) -> Vec<std::ops::Range<usize>> {
     }
     rings
 }
+
+#[cfg(test)]
+mod tests {
+    use nalgebra::{DMatrix, DVector};
+    use rand_distr::{Distribution, Gamma};
+    use rand_xoshiro::Xoshiro256PlusPlus;
+    use rand_xoshiro::rand_core::SeedableRng;
+
+    use super::super::plate_likelihood::{LikelihoodFit, ModeSample, ModelPoint};
+    use super::probability;
+
+    const MODES: usize = 120;
+
+    /// Share of 400 data sets of Gamma shape 12, whose modes are said to have `stated` effective samples and whose truth lies a
+    /// factor of 1 + `bend` sin above a constant model, that are rejected at 5 %.
+    fn rejected(stated: f64, bend: f64) -> f64 {
+        const SETS: usize = 400;
+        const SHAPE: f64 = 12.0;
+        let mut generator = Xoshiro256PlusPlus::seed_from_u64(2);
+        let gamma = Gamma::new(SHAPE, 1.0 / SHAPE).expect("a positive shape");
+        let mut count = 0;
+        for _ in 0..SETS {
+            let sample = |mode: usize| {
+                let ring = (mode / 4) as f64;
+                ModeSample {
+                    length: 1.02_f64.powf(ring),
+                    power: (1.0 + bend * (0.3 * ring).sin()) * gamma.sample(&mut generator),
+                    effective_samples: stated,
+                }
+            };
+            let samples: Vec<ModeSample> = (0..MODES).map(sample).collect();
+            let mean = samples.iter().map(|sample| sample.power).sum::<f64>() / MODES as f64;
+            let fit = LikelihoodFit {
+                parameters: vec![mean.ln()],
+                point: ModelPoint {
+                    ln_power: DVector::from_element(MODES, mean.ln()),
+                    derivatives: DMatrix::from_element(MODES, 1, 1.0),
+                },
+                deviance: 0.0,
+            };
+            count += usize::from(probability(&fit, &samples).expect("rings are left") < 0.05);
+        }
+        count as f64 / SETS as f64
+    }
+
+    /// A right model is rejected in 5 % of data sets (three binomial errors and the approximation: 1 to 10 %), also where the effective
+    /// samples are wrong by a factor of two either way; a wrong one nearly always.
+    #[test]
+    fn right_models_pass_and_wrong_ones_do_not_whatever_the_effective_samples() {
+        for stated in [6.0, 12.0, 24.0] {
+            let share = rejected(stated, 0.0);
+            assert!((0.01..0.1).contains(&share), "{stated}: {share}");
+            assert!(rejected(stated, 0.3) > 0.9);
+        }
+    }
+}
