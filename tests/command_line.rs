@@ -3,7 +3,8 @@
 use std::process::{Command, Stdio};
 
 use assert_cmd::assert::OutputAssertExt;
-use planish::cli::{ExitStatus, Finished, Terminal, finish};
+use planish::cli::{ExitStatus, Terminal, finish};
+use planish::pipeline::RunOutcome;
 use planish::report::SummaryStyle;
 
 fn planish(words: &[&str]) -> Command {
@@ -84,16 +85,17 @@ const PLAIN: Terminal = Terminal {
         colour: false,
     },
     interactive: false,
+    messages_in_colour: false,
 };
 
 #[test]
 fn the_status_of_a_finished_job_is_its_worst_part() {
-    let finished = |refused: &[&str], gates: &[&str]| Finished {
+    let finished = |refused: &[&str], gates: &[&str]| RunOutcome {
         sheets: vec![],
         refused: refused.iter().map(|text| (*text).to_owned()).collect(),
         gate_missed: gates.iter().map(|text| (*text).to_owned()).collect(),
     };
-    let status = |job: &Finished| finish(job, PLAIN, true);
+    let status = |job: &RunOutcome| finish(job, PLAIN, true);
     assert_eq!(status(&finished(&[], &[])), ExitStatus::Done);
     assert_eq!(status(&finished(&[], &["kappa"])), ExitStatus::GateMissed);
     assert_eq!(status(&finished(&["run 300K"], &[])), ExitStatus::InputWrong);

@@ -3,12 +3,14 @@
 //! To add a measurement: one new file that implements [`Measurement`], one `mod` line and one row in [`REGISTRY`].
 
 mod area;
+mod open_block;
 
 mod record;
 mod spectrum;
 mod strain;
 mod tilt;
 
+pub use open_block::OpenBlock;
 pub use record::{BlockRecord, History, LAGS, ModeSums, Record, Series};
 
 use crate::sheet::{ModeSet, Surface};
@@ -64,49 +66,3 @@ pub const REGISTRY: &[Row] = &[
         open: |_| Box::new(tilt::Tilt::default()),
     },
 ];
-
-/// Measures one block: every registered measurement sees every surface, in frame order.
-pub struct OpenBlock {
-    measurements: Vec<(&'static str, Box<dyn Measurement>)>,
-    frames: usize,
-}
-
-impl OpenBlock {
-    /// Opens a block for all registered measurements, of a run with these modes.
-    #[must_use]
-    pub fn new(modes: &ModeSet) -> Self {
-        Self {
-            measurements: REGISTRY.iter().map(|row| (row.name, (row.open)(modes))).collect(),
-            frames: 0,
-        }
-    }
-
-    /// Sees the next frame.
-    pub fn observe(&mut self, surface: &Surface) {
-        self.frames += 1;
-        for (_, measurement) in &mut self.measurements {
-            measurement.observe(surface);
-        }
-    }
-
-    /// Closes the block.
-    #[must_use]
-    pub fn close(self) -> BlockRecord {
-        let records = self
-            .measurements
-            .into_iter()
-            .map(|(name, measurement)| {
-                let Measured { series, sums } = measurement.close();
-                Record {
-                    measurement: name.to_owned(),
-                    series,
-                    sums,
-                }
-            })
-            .collect();
-        BlockRecord {
-            frames: self.frames,
-            records,
-        }
-    }
-}

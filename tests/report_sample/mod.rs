@@ -4,7 +4,7 @@
 
 use ndarray::Array2;
 use planish::estimates::{
-    AreaBlock, Estimate, ModeEstimate, RunEstimates, SheetEstimates, SpectrumEstimate, SpectrumRow,
+    AreaBlock, Cut, Estimate, ModeEstimate, RunEstimates, SheetEstimates, SpectrumEstimate, SpectrumRow,
     StrainEstimate, Tension,
 };
 use planish::fits::{AreaCurve, Condition, Covariance, Fitted, FittedValue, PlateCurve, Quantity, Verdict};
@@ -64,6 +64,9 @@ pub fn run(name: &str, temperature: f64, tension: Tension) -> RunEstimates {
             relaxation_ps: Some(2.0 * (0.12 / length).powi(2)),
             zone_weight: 1.0,
             split_r_hat: None,
+            block_correlation: 1.0,
+            static_power: 0.0,
+            static_removed: false,
         })
         .collect();
     let mut rows = Vec::new();
@@ -99,6 +102,12 @@ pub fn run(name: &str, temperature: f64, tension: Tension) -> RunEstimates {
         atoms: 1008,
         mass: Some(12_510.0),
         frames: 280,
+        cut: Cut {
+            frames_read: 280,
+            frames_cut: 0,
+            blocks_cut: 0,
+            block_frames: 16,
+        },
         area: estimate(area * (1.0 + 1e-4 * scatter(temperature as usize)), 1.2e-4 * area),
         area_blocks: (0..3)
             .map(|block| AreaBlock {
@@ -123,7 +132,7 @@ pub fn run(name: &str, temperature: f64, tension: Tension) -> RunEstimates {
             free: [true, true, false],
             coupled: false,
         },
-        excess_area: estimate(0.004, 0.0004),
+        excess_area: Some(estimate(0.004, 0.0004)),
         reservations: vec![],
     }
 }

@@ -3,7 +3,7 @@
 
 use ndarray::Array2;
 use planish::estimates::{
-    AreaBlock, Estimate, ModeEstimate, RunEstimates, SpectrumEstimate, SpectrumRow, StrainEstimate, Tension,
+    Cut, AreaBlock, Estimate, ModeEstimate, RunEstimates, SpectrumEstimate, SpectrumRow, StrainEstimate, Tension,
 };
 use planish::theory::{BoxModes, BrillouinZone, PlaneCell};
 use rand_distr::{Distribution, Gamma};
@@ -63,6 +63,9 @@ impl Synthetic {
                 relaxation_ps: None,
                 zone_weight: modes.weights[mode],
                 split_r_hat: (column < 32).then_some(1.0),
+                block_correlation: 1.0,
+                static_power: 0.0,
+                static_removed: false,
             });
         }
         let exact = |value: f64| Estimate {
@@ -78,6 +81,12 @@ impl Synthetic {
             atoms: 1008,
             mass: None,
             frames: 16 * BLOCKS,
+            cut: Cut {
+                frames_read: 16 * BLOCKS,
+                frames_cut: 0,
+                blocks_cut: 0,
+                block_frames: 16,
+            },
             area: exact(modes.cell.area()),
             area_blocks: Vec::<AreaBlock>::new(),
             spectrum: SpectrumEstimate {
@@ -95,7 +104,7 @@ impl Synthetic {
                 free: [true, true, false],
                 coupled: false,
             },
-            excess_area: exact(0.01),
+            excess_area: Some(exact(0.01)),
             reservations: Vec::new(),
         }
     }
