@@ -6,6 +6,7 @@ use chemfiles::{CellShape, Property, Trajectory};
 
 use super::chemfiles_thread::{OpenFile, close, on_chemfiles_thread, take_warnings};
 use super::source::FirstFrameWork;
+use super::time_table::{TimeTable, probe_times};
 use super::{Cell, Clock, Frame, FrameError, FrameSource, ReadNote, ReadOptions, SheetAtoms};
 
 /// Formats whose frames carry the step of the simulation. For the others chemfiles gives the number of the frame.
@@ -176,6 +177,15 @@ impl FrameSource for ChemfilesSource {
             Ok::<_, String>(work(frame))
         })?;
         outcome.map_err(|reason| self.bad_frame(0, reason))?
+    }
+
+    fn times(&mut self) -> Result<TimeTable, FrameError> {
+        if self.format == "DCD" && self.clock == Clock::File {
+            return Ok(TimeTable::Absent(
+                "a DCD does not say what unit its times are in".to_owned(),
+            ));
+        }
+        probe_times(self)
     }
 
     fn notes(&self) -> &[ReadNote] {

@@ -74,7 +74,7 @@ impl DumpBox {
     }
 
     /// The Cartesian position of scaled coordinates, 0 at the box's corner and 1 at the ends of its edges.
-    pub fn from_scaled(&self, scaled: [f64; 3]) -> [f64; 3] {
+    pub fn unscaled(&self, scaled: [f64; 3]) -> [f64; 3] {
         self.shifted(self.origin, scaled)
     }
 

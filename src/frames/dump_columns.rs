@@ -106,7 +106,7 @@ impl DumpColumns {
         }
         atom.position = match self.form {
             PositionForm::Cartesian => atom.position.map(|component| component * bounds.length),
-            PositionForm::Scaled => bounds.from_scaled(atom.position),
+            PositionForm::Scaled => bounds.unscaled(atom.position),
         };
         if self.image.is_some() {
             atom.position = bounds.shifted(atom.position, image);

@@ -156,8 +156,8 @@ impl LammpsDumpSource {
             Ok(())
         })?;
         ids.sort_unstable();
-        if let Some(pair) = ids.windows(2).find(|pair| pair[0] == pair[1]) {
-            return Err(self.bad_frame(0, format!("two atoms have the id {}", pair[0])));
+        if let Some(&[id, _]) = ids.array_windows().find(|[one, other]| one == other) {
+            return Err(self.bad_frame(0, format!("two atoms have the id {id}")));
         }
         if ids.is_empty() {
             self.notes.push(ReadNote::OrderAssumed {

@@ -10,13 +10,15 @@ use super::{FrameError, FrameSource, ReadOptions};
 /// Bytes of (unpacked) text looked at to tell formats by content.
 const HEAD_BYTES: usize = 64;
 
+type OpenFn = fn(&Path, &ReadOptions) -> Result<Box<dyn FrameSource>, FrameError>;
+
 /// A reader: whether it takes a file, and how it opens one.
 struct Reader {
     /// Extensions of the formats it reads, for messages.
     extensions: fn() -> Vec<String>,
     /// Whether a file is for this reader, by its path and its first (unpacked) bytes.
     takes: fn(&Path, &[u8]) -> bool,
-    open: fn(&Path, &ReadOptions) -> Result<Box<dyn FrameSource>, FrameError>,
+    open: OpenFn,
 }
 
 /// The readers, the first that takes a file opens it. Purpose-built readers stand before chemfiles, which takes the rest.

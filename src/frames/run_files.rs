@@ -118,16 +118,15 @@ impl RunFiles {
 
     /// The reader of a file, opened again where it was closed.
     pub fn source(&mut self, file: usize) -> Result<&mut dyn FrameSource, FrameError> {
-        let place = match self.open.iter().position(|(open, _)| *open == file) {
-            Some(place) => place,
-            None => {
-                if self.open.len() == OPEN_FILES {
-                    self.open.remove(0);
-                }
-                let source = reader::open(&self.files[file].path, &self.options)?;
-                self.open.push((file, source));
-                self.open.len() - 1
+        let place = if let Some(place) = self.open.iter().position(|(open, _)| *open == file) {
+            place
+        } else {
+            if self.open.len() == OPEN_FILES {
+                self.open.remove(0);
             }
+            let source = reader::open(&self.files[file].path, &self.options)?;
+            self.open.push((file, source));
+            self.open.len() - 1
         };
         Ok(self.open[place].1.as_mut())
     }

@@ -50,13 +50,23 @@ pub(super) fn parse(path: &Path, text: &str) -> Result<ThermoSeries, FrameError>
         if !more {
             break;
         }
-        let line = row.position().map_or(0, csv::Position::line) as usize;
+        let line = row.position().map_or(0, |place| line_of(text, place));
         match &mut table {
             None => table = Some(header(path, line, &row)?),
             Some(table) => table.push(line, row.iter())?,
         }
     }
     Ok(table.map(Table::finish).unwrap_or_default())
+}
+
+/// The line of a row, from 1. The parser gives the place where the row before it ended, before blank lines and comments.
+fn line_of(text: &str, place: &csv::Position) -> usize {
+    let rest = text.get(place.byte() as usize..).unwrap_or("");
+    let skipped = rest
+        .lines()
+        .take_while(|line| line.trim().is_empty() || line.starts_with('#'))
+        .count();
+    place.line() as usize + skipped
 }
 
 fn header<'a>(path: &'a Path, line: usize, names: &csv::StringRecord) -> Result<Table<'a>, FrameError> {

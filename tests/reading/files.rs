@@ -69,6 +69,17 @@ pub fn extended_xyz(cell: &Vectors, times: &[f64]) -> String {
 
 /// Frames of the lattice at the given times, 1000 steps apart, written through chemfiles.
 pub fn write_binary(folder: &TempDir, name: &str, cell: &Vectors, times: &[f64]) -> PathBuf {
+    write_with(folder, name, cell, times, |_, _, position| position)
+}
+
+/// The same with each position changed, by frame and atom.
+pub fn write_with(
+    folder: &TempDir,
+    name: &str,
+    cell: &Vectors,
+    times: &[f64],
+    change: impl Fn(usize, usize, [f64; 3]) -> [f64; 3],
+) -> PathBuf {
     let path = folder.path().join(name);
     let mut file = chemfiles::Trajectory::open(&path, 'w').expect("chemfiles opens");
     for (k, time) in times.iter().enumerate() {
@@ -76,8 +87,9 @@ pub fn write_binary(folder: &TempDir, name: &str, cell: &Vectors, times: &[f64])
         // chemfiles takes the vectors as columns.
         let columns = std::array::from_fn(|i| std::array::from_fn(|j| cell[j][i]));
         frame.set_cell(&chemfiles::UnitCell::from_matrix(columns));
-        for s in scaled() {
-            frame.add_atom(&chemfiles::Atom::new("C"), cartesian(cell, s), None);
+        for (atom, s) in scaled().into_iter().enumerate() {
+            let position = change(k, atom, cartesian(cell, s));
+            frame.add_atom(&chemfiles::Atom::new("C"), position, None);
         }
         frame.set("time", *time);
         frame.set_step(1000 * k);

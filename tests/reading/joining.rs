@@ -1,9 +1,10 @@
 //! Which frames of which files are kept, in which order, at which times.
 
-use planish::frames::{Clock, ReadNote, RunInput};
+use planish::frames::{Clock, EngineUnits, ReadNote, RunInput};
 
 use super::files::{
-    BOX, ROTATED, TRICLINIC, extended_xyz, folder, input, open, read, refused, says, write, write_binary,
+    BOX, ROTATED, TRICLINIC, dump, extended_xyz, folder, input, next, open, read, refused, says, words,
+    write, write_binary,
 };
 
 #[test]
@@ -143,4 +144,80 @@ fn runs_may_move_between_threads_and_be_read_side_by_side() {
             });
         }
     });
+}
+
+#[test]
+fn times_stand_in_the_title_of_gro_frames() {
+    let folder = folder();
+    let frames = ["7.00000", "9.50000"].map(|time| {
+        // Columns of the atom line: residue 5 and 5, atom 5 and 5, then three of 8.
+        let atom = "    1C        C    1   0.100   0.200   0.300";
+        format!("sheet t= {time} step= 0\n    1\n{atom}\n   1.0 2.0 3.0\n")
+    });
+    let path = write(&folder, "t.gro", frames.concat());
+    let run = open(&input(&[&path]));
+    assert_eq!(
+        (run.first_time_ps(), run.frame_interval_ps()),
+        (Some(7.0), Some(2.5))
+    );
+}
+
+#[test]
+fn times_in_an_unknown_unit_are_not_used() {
+    let folder = folder();
+    let timed = dump("xs ys zs", words, next, 2).replace("ITEM: TIMESTEP", "ITEM: TIME\n250\nITEM: TIMESTEP");
+    let path = write(&folder, "t.dump", timed);
+    let asked = input(&[&path]);
+    let run = open(&asked);
+    let note = run
+        .notes()
+        .iter()
+        .find(|note| matches!(note, ReadNote::TimesMissing { .. }))
+        .expect("noted");
+    says(&note.to_string(), &["its ITEM: TIME has no unit", "engine_units"]);
+    let real = open(&RunInput {
+        engine_units: Some(EngineUnits::Real),
+        ..asked
+    });
+    // 250 fs; the second frame says the same time and is an overlap.
+    assert_eq!((real.first_time_ps(), real.len()), (Some(0.25), 1));
+
+    let path = write_binary(&folder, "t.dcd", &BOX, &[0.0, 1.0]);
+    let run = open(&input(&[&path]));
+    assert!(
+        run.notes()
+            .iter()
+            .any(|note| note.to_string().contains("a DCD does not say"))
+    );
+    assert_eq!(
+        open(&RunInput {
+            clock: Clock::FrameInterval(0.5),
+            ..input(&[&path])
+        })
+        .frame_interval_ps(),
+        Some(0.5)
+    );
+}
+
+#[test]
+fn a_run_of_more_files_than_are_kept_open_is_read_in_any_order() {
+    let folder = folder();
+    let files: Vec<_> = (0..70)
+        .map(|k| {
+            write_binary(
+                &folder,
+                &format!("part{k}.xtc"),
+                &BOX,
+                &[2.0 * f64::from(k), 2.0 * f64::from(k) + 1.0],
+            )
+        })
+        .collect();
+    let mut run = open(&RunInput {
+        trajectory: vec![files],
+        ..input(&[])
+    });
+    assert_eq!(run.len(), 140);
+    for k in (0..140).rev().step_by(3).chain(0..140) {
+        assert_eq!(read(&mut run, k).time_ps, Some(k as f64));
+    }
 }

@@ -5,8 +5,8 @@ use rstest::rstest;
 use std::fs;
 
 use super::files::{
-    BOX, CORNER, TRICLINIC, check_lattice, dump, empty_frame, extended_xyz, folder, input, next, open, read,
-    refused, refused_frame, says, words, write, write_binary,
+    BOX, CORNER, TRICLINIC, check_lattice, dump, empty_frame, extended_xyz, folder, input, next, open,
+    refused, refused_frame, says, words, write, write_binary, write_with,
 };
 
 #[test]
@@ -67,6 +67,15 @@ fn coordinates_that_are_not_finite_are_refused(#[case] word: &str, #[case] shown
         &message,
         &["t.dump, frame 2", &format!("y of atom {} is {shown}", id - 1)],
     );
+    let path = write_with(&folder, "t.trr", &BOX, &[0.0, 1.0], |k, atom, position| {
+        if (k, atom) == (1, 7) {
+            [position[0], position[1], word.parse().expect("a float")]
+        } else {
+            position
+        }
+    });
+    let message = refused_frame(&path).to_string();
+    says(&message, &["t.trr, frame 1", &format!("z of atom 7 is {shown}")]);
     // chemfiles does not take the word for a number.
     let text = extended_xyz(&BOX, &[0.0, 1.0]).replacen("N ", &format!("N {word} "), 1);
     let path = write(&folder, "t.xyz", text);
