@@ -8,6 +8,7 @@ use std::path::{Path, PathBuf};
 
 use super::dump_box::DumpBox;
 use super::dump_columns::{AtomRow, DumpColumns};
+use super::dump_header::{FrameHead, HeaderError, read_header};
 use super::source::FirstFrameWork;
 use super::text_file::TextFile;
 use super::time_table::TimeTable;
@@ -29,36 +30,28 @@ pub struct LammpsDumpSource {
     line: Vec<u8>,
 }
 
-/// What the index keeps of a frame.
-struct FrameHead {
-    /// Where the frame starts, in bytes of text.
-    start: u64,
-    atoms: usize,
-    step: u64,
-    /// `ITEM: TIME`, in the engine's unit.
-    time: Option<f64>,
+/// What a dump says of an atom.
+pub(super) struct DumpAtom {
+    id: u64,
+    /// Its element, where there is such a column, else its type.
+    name: String,
+    kind: String,
+    mass: Option<f64>,
+    position: [f64; 3],
 }
 
-/// The parts of a frame before its atoms.
-struct Header {
-    head: FrameHead,
-    units: Option<String>,
-    bounds: DumpBox,
-    columns: String,
-}
-
-/// Why a header could not be read.
-enum HeaderError {
-    /// The file ends here: between two frames (`true`), or within this one.
-    End(bool),
-    Io(io::Error),
-    Content(String),
-}
-
-impl From<io::Error> for HeaderError {
-    fn from(error: io::Error) -> Self {
-        Self::Io(error)
+/// The atoms as a chemfiles frame.
+pub(super) fn frame_of(atoms: &[DumpAtom]) -> chemfiles::Frame {
+    let mut frame = chemfiles::Frame::new();
+    for described in atoms {
+        let mut atom = chemfiles::Atom::new(described.name.as_str());
+        atom.set_atomic_type(described.kind.as_str());
+        if let Some(mass) = described.mass {
+            atom.set_mass(mass);
+        }
+        frame.add_atom(&atom, described.position, None);
     }
+    frame
 }
 
 impl LammpsDumpSource {
@@ -93,7 +86,8 @@ impl LammpsDumpSource {
     fn index(&mut self, asked: Option<EngineUnits>) -> Result<(), FrameError> {
         loop {
             let frame = self.frames.len();
-            let header = match self.header() {
+            // Only the heads matter here, and the units may still be unknown; boxes are read again with each frame.
+            let header = match read_header(&mut self.text, 1.0) {
                 Ok(header) => header,
                 Err(HeaderError::End(true)) => return Ok(()),
                 Err(HeaderError::End(false)) => {
@@ -178,7 +172,8 @@ impl LammpsDumpSource {
         self.text
             .seek(start)
             .map_err(|error| unreadable(&self.path, &error))?;
-        let header = self.header().map_err(|error| match error {
+        let length = self.units.map_or(1.0, EngineUnits::length_a);
+        let header = read_header(&mut self.text, length).map_err(|error| match error {
             HeaderError::End(_) => self.bad_frame(frame, "the file ends within the frame".to_owned()),
             HeaderError::Io(error) => unreadable(&self.path, &error),
             HeaderError::Content(reason) => self.bad_frame(frame, reason),
@@ -201,75 +196,24 @@ impl LammpsDumpSource {
         Ok(header.bounds)
     }
 
-    /// Reads the parts of the next frame before its atoms.
-    fn header(&mut self) -> Result<Header, HeaderError> {
-        let start = self.text.position();
-        let mut first = self.next_line(true)?;
-        // A file that was joined by hand may have empty lines between its frames.
-        while first.is_empty() {
-            first = self.next_line(true)?;
-        }
-        let mut units = None;
-        let mut time = None;
-        while first != "ITEM: TIMESTEP" {
-            let value = self.next_line(false)?;
-            match first.as_str() {
-                "ITEM: UNITS" => units = Some(value),
-                "ITEM: TIME" => time = Some(number(&value)?),
-                _ => return Err(expected("ITEM: TIMESTEP", &first)),
-            }
-            first = self.next_line(false)?;
-        }
-        let step = whole_number(&self.next_line(false)?)?;
-        self.expect_line("ITEM: NUMBER OF ATOMS")?;
-        let atoms = whole_number(&self.next_line(false)?)? as usize;
-        let line = self.next_line(false)?;
-        let kind = line
-            .strip_prefix("ITEM: BOX BOUNDS")
-            .ok_or_else(|| expected("ITEM: BOX BOUNDS", &line))?
-            .to_owned();
-        let mut rows = [const { String::new() }; 3];
-        for row in &mut rows {
-            *row = self.next_line(false)?;
-        }
-        let length = self.units.map_or(1.0, EngineUnits::length_a);
-        let bounds = DumpBox::parse(&kind, &rows, length).map_err(HeaderError::Content)?;
-        let line = self.next_line(false)?;
-        let columns = line
-            .strip_prefix("ITEM: ATOMS")
-            .ok_or_else(|| expected("ITEM: ATOMS", &line))?;
-        let head = FrameHead {
-            start,
-            atoms,
-            step,
-            time,
-        };
-        Ok(Header {
-            head,
-            units,
-            bounds,
-            columns: columns.to_owned(),
-        })
-    }
-
-    fn expect_line(&mut self, wanted: &str) -> Result<(), HeaderError> {
-        let line = self.next_line(false)?;
-        if line == wanted {
+    /// The atoms of the first frame, in ascending order of their ids.
+    pub(super) fn first_atoms(&mut self) -> Result<Vec<DumpAtom>, FrameError> {
+        let mut atoms = Vec::with_capacity(self.frames[0].atoms);
+        self.for_each_atom(0, |row, atom| {
+            let name = atom.element.or(atom.kind).unwrap_or("").to_owned();
+            let kind = atom.kind.unwrap_or(&name).to_owned();
+            let id = atom.id.unwrap_or(row as u64);
+            atoms.push(DumpAtom {
+                id,
+                name,
+                kind,
+                mass: atom.mass,
+                position: atom.position,
+            });
             Ok(())
-        } else {
-            Err(expected(wanted, &line))
-        }
-    }
-
-    /// The next line, trimmed. `between` says that a frame has not begun yet.
-    fn next_line(&mut self, between: bool) -> Result<String, HeaderError> {
-        let whole = self.text.read_line(&mut self.line)?;
-        if !whole {
-            return Err(HeaderError::End(between && self.line.is_empty()));
-        }
-        let line =
-            std::str::from_utf8(&self.line).map_err(|error| HeaderError::Content(error.to_string()))?;
-        Ok(line.trim().to_owned())
+        })?;
+        atoms.sort_by_key(|atom| atom.id);
+        Ok(atoms)
     }
 
     fn time(&self, frame: usize) -> Option<f64> {
@@ -342,32 +286,8 @@ impl FrameSource for LammpsDumpSource {
     }
 
     fn with_first_frame(&mut self, work: FirstFrameWork) -> Result<SheetAtoms, FrameError> {
-        let mut atoms = Vec::with_capacity(self.frames[0].atoms);
-        self.for_each_atom(0, |row, atom| {
-            let label = atom.element.or(atom.kind).unwrap_or("").to_owned();
-            let kind = atom.kind.unwrap_or(&label).to_owned();
-            atoms.push((
-                atom.id.unwrap_or(row as u64),
-                label,
-                kind,
-                atom.mass,
-                atom.position,
-            ));
-            Ok(())
-        })?;
-        atoms.sort_by_key(|atom| atom.0);
-        super::chemfiles_thread::on_chemfiles_thread(move |_| {
-            let mut frame = chemfiles::Frame::new();
-            for (_, label, kind, mass, position) in &atoms {
-                let mut atom = chemfiles::Atom::new(label.as_str());
-                atom.set_atomic_type(kind.as_str());
-                if let Some(mass) = mass {
-                    atom.set_mass(*mass);
-                }
-                frame.add_atom(&atom, *position, None);
-            }
-            work(frame)
-        })?
+        let atoms = self.first_atoms()?;
+        super::chemfiles_thread::on_chemfiles_thread(move |_| work(frame_of(&atoms)))?
     }
 
     fn times(&mut self) -> Result<TimeTable, FrameError> {
@@ -392,18 +312,4 @@ impl FrameSource for LammpsDumpSource {
 
 fn unreadable(path: &Path, error: &io::Error) -> FrameError {
     super::reader::unreadable(path, error)
-}
-
-fn expected(wanted: &str, found: &str) -> HeaderError {
-    HeaderError::Content(format!("found \"{found}\" where \"{wanted}\" was expected"))
-}
-
-fn number(text: &str) -> Result<f64, HeaderError> {
-    text.parse()
-        .map_err(|_| HeaderError::Content(format!("\"{text}\" is not a number")))
-}
-
-fn whole_number(text: &str) -> Result<u64, HeaderError> {
-    text.parse()
-        .map_err(|_| HeaderError::Content(format!("\"{text}\" is not a whole number")))
 }

@@ -6,13 +6,16 @@
 //! to the reader of its format (a [`FrameSource`]), joins them in time and hands out checked frames.
 
 mod cell;
+mod cell_check;
 mod chemfiles_reader;
 mod chemfiles_thread;
 mod dump_box;
 mod dump_columns;
+mod dump_header;
 mod engine_units;
 mod error;
 mod frame;
+mod frame_place;
 mod lammps_dump;
 mod read_note;
 mod reader;
@@ -34,10 +37,11 @@ pub use cell::{Cell, CellAxis, cross, dot, length};
 pub use chemfiles_reader::ChemfilesSource;
 pub use error::FrameError;
 pub use frame::{Frame, SheetAtoms};
+pub use frame_place::FramePlace;
 pub use lammps_dump::LammpsDumpSource;
 pub use read_note::ReadNote;
 pub use reader::open;
-pub use run_frames::{FramePlace, RunFrames};
+pub use run_frames::RunFrames;
 pub use run_input::{Clock, EngineUnits, RunInput};
 pub use source::{FirstFrameWork, FrameSource, ReadOptions};
 pub use thermo::ThermoSeries;

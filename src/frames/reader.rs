@@ -84,7 +84,7 @@ pub(super) fn chemfiles_format(path: &Path, head: &[u8]) -> Result<String, Strin
         .to_str()
         .ok_or("its path is not valid UTF-8, which chemfiles cannot open: rename the file")?;
     if head.starts_with(b"ITEM:") {
-        return Ok("LAMMPS".to_owned());
+        return Err("it is a text dump".to_owned());
     }
     let (stem, compression) = [(".gz", " / GZ"), (".bz2", " / BZ2"), (".xz", " / XZ")]
         .into_iter()

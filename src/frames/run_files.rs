@@ -48,23 +48,34 @@ impl RunFiles {
             open: Vec::new(),
             notes: Vec::new(),
         };
+        let mut sources = Vec::new();
         for entry in &input.trajectory {
             let mut files = Vec::with_capacity(entry.len());
             for path in entry {
                 let mut source = reader::open(path, &options)?;
                 let times = source.times()?;
                 run.notes.extend_from_slice(source.notes());
-                files.push(RunFile {
+                let file = RunFile {
                     path: path.clone(),
                     frames: source.len(),
                     frames_before: 0,
                     times,
-                });
+                };
+                // The first files stay open, so that a run of a few files indexes each of them once.
+                let stays = sources.len() + files.len() < OPEN_FILES;
+                files.push((file, stays.then_some(source)));
             }
-            let timed = files.iter().all(|file: &RunFile| file.times.time(0).is_some());
-            files.sort_by(|one, other| in_time_order(timed, one, other));
-            run.files.append(&mut files);
+            let timed = files.iter().all(|(file, _)| file.times.time(0).is_some());
+            files.sort_by(|(one, _), (other, _)| in_time_order(timed, one, other));
+            for (file, source) in files {
+                run.files.push(file);
+                sources.push(source);
+            }
         }
+        let opened = sources.into_iter().enumerate();
+        run.open = opened
+            .filter_map(|(file, source)| Some((file, source?)))
+            .collect();
         if run.files.is_empty() {
             return Err(FrameError::NoFiles);
         }

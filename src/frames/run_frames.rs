@@ -1,15 +1,10 @@
 //! The frames of a run: its files joined in time, cut to the wanted part, reduced to the sheet's atoms, and checked.
 
-use std::fmt;
-use std::path::PathBuf;
-
+use super::cell_check::check_cell;
+use super::frame_place::FramePlace;
 use super::run_files::RunFiles;
 use super::topology::{AtomRequest, UNKNOWN_SPECIES, find_atoms};
 use super::{Cell, Clock, Frame, FrameError, ReadNote, RunInput, SheetAtoms};
-
-/// Shortest cell vector, and smallest volume relative to the product of the three lengths, that count as a cell.
-const SMALLEST_LENGTH_A: f64 = 1e-3;
-const SMALLEST_RELATIVE_VOLUME: f64 = 1e-6;
 
 /// The frames of one run that `from`, `to` and `stride` leave, in time order.
 ///
@@ -32,28 +27,6 @@ pub struct RunFrames {
 struct KeptFrame {
     file: u32,
     frame: u32,
-}
-
-/// Where a frame of a run lies in its files, for messages: "frame 17 of run.xtc (t = 6.8 ps)".
-#[derive(Clone, Debug, PartialEq)]
-pub struct FramePlace {
-    /// The file.
-    pub path: PathBuf,
-    /// The frame's number in the file, from 0.
-    pub frame_in_file: usize,
-    /// Its time in ps, where known.
-    pub time_ps: Option<f64>,
-}
-
-impl fmt::Display for FramePlace {
-    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "frame {} of {}", self.frame_in_file, self.path.display())?;
-        match self.time_ps {
-            // Times stored in single precision carry digits that mean nothing.
-            Some(time) => write!(f, " (t = {} ps)", (time * 1e6).round() / 1e6),
-            None => Ok(()),
-        }
-    }
 }
 
 impl RunFrames {
@@ -327,47 +300,6 @@ impl RunFrames {
         frame.time_ps = time;
         Ok(())
     }
-}
-
-/// What is wrong with a cell.
-enum CellFault {
-    NotFinite(String, f64),
-    Flat(String),
-}
-
-impl CellFault {
-    fn error(self, path: PathBuf, frame: usize) -> FrameError {
-        match self {
-            Self::NotFinite(what, value) => FrameError::NotFinite {
-                path,
-                frame,
-                what,
-                value,
-            },
-            Self::Flat(what) => FrameError::FlatCell { path, frame, what },
-        }
-    }
-}
-
-fn check_cell(cell: &Cell) -> Result<(), CellFault> {
-    let mut product = 1.0;
-    for (vector, letter) in cell.vectors.iter().zip(['a', 'b', 'c']) {
-        if let Some(&component) = vector.iter().find(|component| !component.is_finite()) {
-            return Err(CellFault::NotFinite(
-                format!("a component of cell vector {letter}"),
-                component,
-            ));
-        }
-        let length = super::cell::length(*vector);
-        if length < SMALLEST_LENGTH_A {
-            return Err(CellFault::Flat(format!("cell vector {letter} has zero length")));
-        }
-        product *= length;
-    }
-    if cell.volume().abs() < SMALLEST_RELATIVE_VOLUME * product {
-        return Err(CellFault::Flat("the cell vectors lie in one plane".to_owned()));
-    }
-    Ok(())
 }
 
 fn note_unknown(atoms: &SheetAtoms, notes: &mut Vec<ReadNote>) {

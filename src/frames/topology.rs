@@ -6,9 +6,10 @@ use std::path::{Path, PathBuf};
 use chemfiles::{Selection, Trajectory};
 
 use super::chemfiles_thread::take_warnings;
+use super::lammps_dump::{DumpAtom, LammpsDumpSource, frame_of};
 use super::reader::{chemfiles_format, unknown_format, unreadable};
 use super::text_file::first_bytes;
-use super::{FrameError, FrameSource, SheetAtoms};
+use super::{FrameError, FrameSource, ReadOptions, SheetAtoms};
 
 /// Name of an atom whose species no file tells.
 pub(super) const UNKNOWN_SPECIES: &str = "X";
@@ -40,9 +41,14 @@ pub(super) fn find_atoms(
 ) -> Result<SheetAtoms, FrameError> {
     let path = source.path().to_owned();
     let request = request.clone();
+    let topology = request
+        .topology
+        .as_deref()
+        .map(TopologyFile::look_at)
+        .transpose()?;
     source.with_first_frame(Box::new(move |mut frame| {
-        if let Some(topology) = &request.topology {
-            apply_topology(&mut frame, &path, topology)?;
+        if let Some(topology) = topology {
+            topology.apply(&mut frame, &path)?;
         }
         let file = request.topology.as_deref().unwrap_or(&path);
         let species = name_species(&mut frame, file, request.species.as_deref())?;
@@ -50,34 +56,69 @@ pub(super) fn find_atoms(
     }))
 }
 
-/// Replaces the frame's topology by that of the first frame of a file. Runs on the chemfiles thread.
-fn apply_topology(frame: &mut chemfiles::Frame, path: &Path, topology: &Path) -> Result<(), FrameError> {
-    let refuse = |error: chemfiles::Error| FrameError::Unreadable {
-        path: topology.to_owned(),
-        reason: format!("{} (wanted as topology)", error.message),
-    };
-    let metadata = std::fs::metadata(topology).map_err(|error| unreadable(topology, &error))?;
-    if metadata.is_dir() {
-        return Err(FrameError::Directory {
-            path: topology.to_owned(),
-            expected: "topology",
-        });
+/// A topology file, as far as it is read before the first frame is.
+struct TopologyFile {
+    path: PathBuf,
+    content: TopologyContent,
+}
+
+enum TopologyContent {
+    /// A text dump, read by its own reader.
+    Dump(Vec<DumpAtom>),
+    /// A file that chemfiles reads in this format.
+    Chemfiles(String),
+}
+
+impl TopologyFile {
+    fn look_at(path: &Path) -> Result<Self, FrameError> {
+        let metadata = std::fs::metadata(path).map_err(|error| unreadable(path, &error))?;
+        if metadata.is_dir() {
+            return Err(FrameError::Directory {
+                path: path.to_owned(),
+                expected: "topology",
+            });
+        }
+        let head = first_bytes(path, 64).map_err(|error| unreadable(path, &error))?;
+        let content = if head.starts_with(b"ITEM:") {
+            let mut dump = LammpsDumpSource::open(path, &ReadOptions::default())?;
+            TopologyContent::Dump(dump.first_atoms()?)
+        } else {
+            let format = chemfiles_format(path, &head).map_err(|reason| unknown_format(path, reason))?;
+            TopologyContent::Chemfiles(format)
+        };
+        Ok(Self {
+            path: path.to_owned(),
+            content,
+        })
     }
-    let head = first_bytes(topology, 64).map_err(|error| unreadable(topology, &error))?;
-    let format = chemfiles_format(topology, &head).map_err(|reason| unknown_format(topology, reason))?;
-    let mut first = chemfiles::Frame::new();
-    let mut file = Trajectory::open_with_format(topology, 'r', format.as_str()).map_err(refuse)?;
-    file.read_step(0, &mut first).map_err(refuse)?;
-    take_warnings();
-    if first.size() != frame.size() {
-        return Err(FrameError::TopologyAtomCount {
-            topology: topology.to_owned(),
-            trajectory: path.to_owned(),
-            found: first.size(),
-            expected: frame.size(),
-        });
+
+    /// Replaces the topology of the frame of a trajectory. Runs on the chemfiles thread.
+    fn apply(self, frame: &mut chemfiles::Frame, trajectory: &Path) -> Result<(), FrameError> {
+        let refuse = |error: chemfiles::Error| FrameError::Unreadable {
+            path: self.path.clone(),
+            reason: format!("{} (wanted as topology)", error.message),
+        };
+        let first = match &self.content {
+            TopologyContent::Dump(atoms) => frame_of(atoms),
+            TopologyContent::Chemfiles(format) => {
+                let mut first = chemfiles::Frame::new();
+                let mut file =
+                    Trajectory::open_with_format(&self.path, 'r', format.as_str()).map_err(refuse)?;
+                file.read_step(0, &mut first).map_err(refuse)?;
+                take_warnings();
+                first
+            }
+        };
+        if first.size() != frame.size() {
+            return Err(FrameError::TopologyAtomCount {
+                topology: self.path.clone(),
+                trajectory: trajectory.to_owned(),
+                found: first.size(),
+                expected: frame.size(),
+            });
+        }
+        frame.set_topology(&first.topology()).map_err(refuse)
     }
-    frame.set_topology(&first.topology()).map_err(refuse)
 }
 
 /// The species of every atom of the frame; where it came from `species`, it also becomes the atom's name.

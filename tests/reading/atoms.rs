@@ -3,7 +3,9 @@
 use planish::frames::{ReadNote, RunInput};
 use std::fmt::Write as _;
 
-use super::files::{BOX, extended_xyz, folder, input, open, read, refused, says, write, write_binary};
+use super::files::{
+    BOX, dump, extended_xyz, folder, input, open, read, refused, says, words, write, write_binary,
+};
 
 #[test]
 fn a_selection_keeps_the_order_of_the_file() {
@@ -91,4 +93,28 @@ fn one_species_name_serves_a_file_without_types() {
         ..input(&[&path])
     };
     says(&refused(&two), &["no types", "topology"]);
+}
+
+#[test]
+fn a_text_dump_serves_as_topology_in_the_order_of_its_ids() {
+    let folder = folder();
+    let path = write_binary(&folder, "t.xtc", &BOX, &[0.0]);
+    // The ids of a group, and the rows in another order.
+    let text = dump(
+        "mass xs ys zs",
+        |s| format!("15.0 {}", words(s)),
+        |atom| 100 + 7 * (11 - atom),
+        1,
+    );
+    let topology = write(&folder, "start.dump", text);
+    let asked = RunInput {
+        topology: Some(topology),
+        ..input(&[&path])
+    };
+    let run = open(&RunInput {
+        species: Some(vec!["B".to_owned(), "N".to_owned()]),
+        ..asked
+    });
+    assert_eq!(run.atoms().species[..3], ["N", "B", "N"]);
+    assert_eq!(run.atoms().masses.as_ref().expect("masses")[0], 15.0);
 }

@@ -32,6 +32,8 @@ fn extended_xyz_keeps_cell_and_positions_together(#[values(&TRICLINIC, &ROTATED,
 #[case("t.xyz.gz", &TRICLINIC, 1e-4)]
 #[case("t.xyz.xz", &ROTATED, 1e-4)]
 #[case("t.xyz.bz2", &ROTATED, 1e-4)]
+#[case("t.lammpstrj.xz", &BOX, 1e-3)]
+#[case("t.lammpstrj.bz2", &BOX, 1e-3)]
 #[case("t.pdb", &TRICLINIC, 1e-2)]
 fn formats_keep_cell_and_positions_together(#[case] name: &str, #[case] cell: &Vectors, #[case] error: f64) {
     let folder = folder();

@@ -230,3 +230,47 @@ fn selections_and_clocks_that_do_not_fit_are_refused() {
     });
     says(&message, &["leave none of the 2 frames", "from 0 ps to 1 ps"]);
 }
+
+#[test]
+fn malformed_text_dumps_are_refused_with_their_frame() {
+    let folder = folder();
+    let text = dump("xs ys zs", words, next, 2);
+    let cases = [
+        (
+            text.replace("xs ys zs", "xs ys foo"),
+            "frame 0: the atom table has the columns \"id type xs ys foo\"",
+        ),
+        (
+            text.replacen("ITEM: BOX BOUNDS", "ITEM: BOX", 1),
+            "frame 0: found \"ITEM: BOX xy xz yz pp pp pp\"",
+        ),
+        (
+            text.replace("\n400\n", "\nfour\n"),
+            "frame 1: \"four\" is not a whole number",
+        ),
+        (
+            text.replace("-2.0 12.5 -3.0", "-2.0 12.5"),
+            "frame 0: the line \"-2.0 12.5\" of the box has fewer than 3",
+        ),
+        (
+            text.replacen("\n1 1 0 0 0.45", "\n1 1 0 0", 1),
+            "frame 0: atom line 1: 4 columns, but the header names 5",
+        ),
+        (
+            text.replacen("\n1 1 0 0 0.45", "\n1 1 0 o 0.45", 1),
+            "frame 0: atom line 1: \"o\" is not a number",
+        ),
+        (
+            text.replacen("\n2 2 ", "\n1 2 ", 1),
+            "frame 0: two atoms have the id 1",
+        ),
+        (
+            format!("ITEM: UNITS\nlj\n{text}"),
+            "ITEM: UNITS lj, which planish does not know",
+        ),
+    ];
+    for (text, part) in cases {
+        let path = write(&folder, "t.dump", text);
+        says(&refused_frame(&path).to_string(), &["t.dump", part]);
+    }
+}
