@@ -111,6 +111,18 @@ impl RunFiles {
         }
     }
 
+    /// How far two times near `time` may differ and still be the same: the rounding of times that are stored in single
+    /// precision, but well below the time between two frames of the file.
+    pub fn slack(&self, file: usize, time: f64) -> f64 {
+        let rounding = f64::from(f32::EPSILON) * time.abs();
+        match (self.time(file, 0), self.time(file, 1)) {
+            (Some(first), Some(second)) if self.frames(file) > 1 => {
+                rounding.min(0.25 * (second - first).abs())
+            }
+            _ => rounding,
+        }
+    }
+
     /// The first file whose frames have no times, and why.
     pub fn without_times(&self) -> Option<(PathBuf, String)> {
         if matches!(self.clock, Clock::FrameInterval(_)) {

@@ -84,22 +84,23 @@ impl RunFrames {
                 return Err(FrameError::TimesNeeded { path, key, reason });
             }
         }
-        let mut last: Option<f64> = None;
+        // The latest time so far, and the file it stands in.
+        let mut last: Option<(f64, usize)> = None;
         let mut wanted = 0usize;
         for file in 0..self.files.len() {
             let mut dropped: Option<(usize, f64, f64)> = None;
             for frame in 0..self.files.frames(file) {
                 let time = self.files.time(file, frame);
-                if let (Some(last), Some(time)) = (last, time)
-                    && time <= last
+                // 20.4 ps must include the frame at 20.39999 ps, and find it again in a restart.
+                let slack = time.map_or(0.0, |time| self.files.slack(file, time));
+                if let (Some((last, last_file)), Some(time)) = (last, time)
+                    && time <= last + if last_file == file { 0.0 } else { slack }
                 {
                     let (count, first, _) = dropped.unwrap_or((0, time, time));
                     dropped = Some((count + 1, first, time));
                     continue;
                 }
-                last = time.or(last);
-                // A stored time may be off by its single precision; 20.4 ps must include the frame at 20.39999 ps.
-                let slack = time.map_or(0.0, |time| 4.0 * f64::from(f32::EPSILON) * time.abs());
+                last = time.map(|time| (time, file)).or(last);
                 let early = input
                     .from
                     .zip(time)

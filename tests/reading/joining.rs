@@ -221,3 +221,46 @@ fn a_run_of_more_files_than_are_kept_open_is_read_in_any_order() {
         assert_eq!(read(&mut run, k).time_ps, Some(k as f64));
     }
 }
+
+#[test]
+fn an_overlap_is_found_where_times_are_rounded() {
+    let folder = folder();
+    // Single precision rounds 0.1 k differently for each k, and the times between are interpolated.
+    let times =
+        |from: usize, to: usize| -> Vec<f64> { (from..to).map(|k| 1000.0 + 0.1 * k as f64).collect() };
+    for overlap in 1..30 {
+        let first = write_binary(&folder, "a.xtc", &BOX, &times(0, 60));
+        let second = write_binary(&folder, "b.xtc", &BOX, &times(60 - overlap, 117));
+        let run = open(&input(&[&first, &second]));
+        assert_eq!(run.len(), 117, "{overlap} frames overlap");
+    }
+}
+
+#[test]
+fn late_and_dense_frames_are_not_taken_for_one_another() {
+    let folder = folder();
+    // A microsecond of a dump whose frames are 0.02 ps apart: closer than single precision could tell.
+    let dense = |from: usize| {
+        let text = dump("xs ys zs", words, next, 4);
+        (0..4).fold(text, |text, k| {
+            text.replace(
+                &format!("TIMESTEP\n{}\n", 400 * k),
+                &format!("TIMESTEP\n{}\n", from + 10 * k),
+            )
+        })
+    };
+    let first = write(&folder, "a.dump", dense(500_000_000));
+    let second = write(&folder, "b.dump", dense(500_000_040));
+    let asked = RunInput {
+        clock: Clock::Timestep(0.002),
+        ..input(&[&first, &second])
+    };
+    let run = open(&asked);
+    assert_eq!(run.len(), 8);
+    let part = open(&RunInput {
+        from: Some(1_000_000.04),
+        to: Some(1_000_000.1),
+        ..asked
+    });
+    assert_eq!(part.len(), 4);
+}
