@@ -93,6 +93,9 @@ fn mode(length: f64, effective_samples: f64, split_r_hat: Option<f64>) -> ModeEs
         relaxation_ps: None,
         zone_weight: 1.0,
         split_r_hat,
+        block_correlation: 1.0,
+        static_power: 0.0,
+        static_removed: false,
     }
 }
 

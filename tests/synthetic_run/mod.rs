@@ -3,7 +3,8 @@
 
 use ndarray::Array2;
 use planish::estimates::{
-    Cut, AreaBlock, Estimate, ModeEstimate, RunEstimates, SpectrumEstimate, SpectrumRow, StrainEstimate, Tension,
+    AreaBlock, Cut, Estimate, ModeEstimate, RunEstimates, SpectrumEstimate, SpectrumRow, StrainEstimate,
+    Tension,
 };
 use planish::theory::{BoxModes, BrillouinZone, PlaneCell};
 use rand_distr::{Distribution, Gamma};
