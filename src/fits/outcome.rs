@@ -18,10 +18,10 @@ pub struct FitOptions {
 /// The plate model fitted to one run's heights.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
 pub enum PlateModel {
-    /// The box SCSA at the held tension, with kappa, b and Y free (PHYSICS 4).
+    /// The box SCSA at the held tension, with kappa, b and Y free.
     #[default]
     Rippled,
-    /// kappa (1 - b q^2) q^4 + sigma q^2 with kappa, b and sigma free (PHYSICS 3).
+    /// kappa (1 - b q^2) q^4 + sigma q^2 with kappa, b and sigma free.
     Harmonic,
 }
 

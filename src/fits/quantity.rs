@@ -2,7 +2,7 @@
 
 use serde::{Deserialize, Serialize};
 
-/// How far a value can be trusted (contract, "Verdicts"). Ordered: good < weak < unusable.
+/// How far a value can be trusted. Ordered: good < weak < unusable.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
 pub enum Verdict {
@@ -67,10 +67,10 @@ pub const NORMAL_95: f64 = 1.959_963_984_540_054;
 
 /// One fitted or measured number with everything a reader must know about it.
 ///
-/// Values are in the unit that the contract gives the name (eV, N/m, A^2, 1/K, ...).
+/// Values are in the unit of the name (eV, N/m, A^2, 1/K, ...).
 #[derive(Clone, Debug, PartialEq)]
 pub struct Quantity {
-    /// Name, one of the contract's table.
+    /// Name, one of `parameters::PARAMETER_NAMES`.
     pub name: &'static str,
     /// Unit, as written to the parameter file.
     pub unit: &'static str,

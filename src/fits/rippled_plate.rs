@@ -15,7 +15,7 @@ use crate::theory::{PlateParameter, Response};
 use crate::units::N_PER_M_PER_EV_PER_A2;
 
 /// kappa, b and Y of each run's bare plate, and its renormalised kappa at the smallest q. Verdicts by [`super::mode_verdict`],
-/// the window by [`super::window`], errors by [`super::plate_covariance`].
+/// the window by `window`, errors by [`super::plate_covariance`].
 pub struct RippledPlate;
 
 const METHOD: &str = "height-spectrum box-scsa";

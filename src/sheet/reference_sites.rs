@@ -49,7 +49,7 @@ pub struct ReferenceSites {
 impl ReferenceSites {
     /// The mean of `frames` (at least one; the same atoms in each).
     ///
-    /// An atom that is ever more than [`HOP`] spacings (in the plane) from where the first frame has it is recorded in
+    /// An atom that is ever more than `HOP` (0.75) spacings (in the plane) from where the first frame has it is recorded in
     /// `moved`.
     #[must_use]
     pub fn average(frames: &[Frame], masses: Option<&[f64]>) -> Self {

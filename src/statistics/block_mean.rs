@@ -15,7 +15,7 @@ pub struct BlockMean {
 ///
 /// With weights w_b (frames) and deviations d_b = y_b - mean, the plain variance of the mean is
 /// sum w d^2 / ((B - 1) sum w), since a block's variance goes as 1/w; neighbours' correlation multiplies it by
-/// 1 + 2 sum_j r_j, r_j = sum sqrt(w_b w_(b+j)) d_b d_(b+j) / sum w d^2, over the window of [`block_window_closed`].
+/// 1 + 2 sum_j r_j, r_j = sum sqrt(w_b w_(b+j)) d_b d_(b+j) / sum w d^2, over the window of `block_window_closed`.
 /// `correlation` gives that factor where it is better known than these few blocks can tell. Never below 1: block means
 /// of a relaxing series are not anticorrelated. `None` for fewer than two blocks.
 #[must_use]

@@ -10,7 +10,7 @@
 //! ```
 //!
 //! A term counts where both of its modes are in the sum. Since k x q = k x p for p = k - q, both sums are pair sums over
-//! p with the kernel (k x p)^4 and the same moments of G (see [`super::mode_convolution`]).
+//! p with the kernel (k x p)^4 and the same moments of G (see `mode_convolution`).
 
 use thiserror::Error;
 
@@ -122,7 +122,7 @@ impl BoxScsa {
     }
 
     /// Solves the equations of a sheet with the bare Poisson ratio `poisson` in a fixed cell, whose mean stress is the tension
-    /// of `state` (see [`super::clamped_cell`]). `modes` are those that this solver was made for.
+    /// of `state` (see `clamped_cell`). `modes` are those that this solver was made for.
     ///
     /// # Errors
     /// See [`ScsaError`].
