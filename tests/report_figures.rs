@@ -50,6 +50,7 @@ fn both(name: &str) -> (Figure, Figure) {
     let report = SheetReport {
         estimates: &estimates,
         fits: &fits,
+        q_max: None,
     };
     (
         kappa_figure(&report).expect("kappa to show"),
@@ -76,6 +77,7 @@ fn every_point_has_its_marker_and_every_run_its_name() {
     let figure = kappa_figure(&SheetReport {
         estimates: &estimates,
         fits: &fits,
+        q_max: None,
     })
     .expect("kappa to show");
     let points: usize = estimates.runs.iter().map(|run| run.spectrum.rows.len()).sum();
@@ -96,6 +98,7 @@ fn a_sheet_without_fits_still_shows_its_data_and_one_without_runs_shows_nothing(
     let report = SheetReport {
         estimates: &estimates,
         fits: &[],
+        q_max: None,
     };
     assert!(kappa_figure(&report).is_some());
     assert!(area_figure(&report).is_some());
@@ -103,6 +106,7 @@ fn a_sheet_without_fits_still_shows_its_data_and_one_without_runs_shows_nothing(
     let report = SheetReport {
         estimates: &estimates,
         fits: &[],
+        q_max: None,
     };
     assert!(kappa_figure(&report).is_none());
     assert!(area_figure(&report).is_none());
@@ -187,6 +191,7 @@ fn a_point_without_a_positive_kappa_is_left_out_of_the_logarithmic_plot() {
     let report = SheetReport {
         estimates: &estimates,
         fits: &[],
+        q_max: None,
     };
     let shown = elements(&kappa_figure(&report).expect("short waves stay").svg)["polygon"];
     let points = kappa_points(&estimates.runs[0], None);

@@ -26,6 +26,7 @@ fn columns_are_those_that_scripts_rely_on() {
     let spectrum = spectrum_csv(&[SheetReport {
         estimates: &estimates,
         fits: &fits,
+        q_max: None,
     }]);
     assert!(spectrum.starts_with(
         "sheet,run,temperature_K,q_per_A,modes,height_power_A2,height_power_error_A2,kappa_eV,kappa_error_eV,\
@@ -48,6 +49,7 @@ fn used_is_the_window_of_the_run() {
     let text = spectrum_csv(&[SheetReport {
         estimates: &estimates,
         fits: &fits,
+        q_max: None,
     }]);
     for row in rows(&text) {
         let q: f64 = row[3].parse().expect("a number");
@@ -58,6 +60,7 @@ fn used_is_the_window_of_the_run() {
     let without_fit = spectrum_csv(&[SheetReport {
         estimates: &estimates,
         fits: &[],
+        q_max: None,
     }]);
     assert!(rows(&without_fit).iter().all(|row| row[11] == "false"));
 }
@@ -72,6 +75,7 @@ fn absent_values_are_empty_cells() {
     let spectrum = rows(&spectrum_csv(&[SheetReport {
         estimates: &estimates,
         fits: &[],
+        q_max: None,
     }]));
     assert_eq!([&spectrum[0][7], &spectrum[0][8], &spectrum[0][10]], ["", "", ""]);
     assert!(spectrum[1].iter().all(|cell| !cell.is_empty()));

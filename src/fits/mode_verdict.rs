@@ -114,15 +114,19 @@ pub fn judge(window: &[&ModeEstimate], frames: usize) -> Judgement {
     judgement
 }
 
-/// A remark where the relative error of a value is above the wanted one: how much longer the run must be.
+/// A run that is to be longer by less than this is long enough: the error's own error is larger.
+const LEAST_GROWTH: f64 = 1.1;
+
+/// A remark where the relative error of a value is clearly above the wanted one: how much longer the run must be.
 #[must_use]
 pub fn advice(relative_error: f64, wanted_error: f64) -> Option<String> {
-    (relative_error > wanted_error).then(|| {
+    let longer = (relative_error / wanted_error).powi(2);
+    (longer >= LEAST_GROWTH).then(|| {
         format!(
             "error {:.1} %, wanted {:.1} %: run {:.1} times as long",
             100.0 * relative_error,
             100.0 * wanted_error,
-            (relative_error / wanted_error).powi(2)
+            longer
         )
     })
 }

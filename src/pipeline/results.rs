@@ -64,6 +64,7 @@ pub(super) fn write_results(
         .map(|sheet| SheetReport {
             estimates: &sheet.estimates,
             fits: &sheet.fits,
+            q_max: plan.spectrum.q_max,
         })
         .collect();
     let estimates: Vec<&SheetEstimates> = sheets.iter().map(|sheet| &sheet.estimates).collect();

@@ -1,5 +1,7 @@
 //! Values with their errors as physicists print them: `1.45(12)`.
 
+use crate::parameters::round_for_writing;
+
 /// Largest and smallest decimal exponent of a value that is printed without a power of ten.
 const PLAIN_EXPONENTS: std::ops::Range<i32> = -3..5;
 
@@ -12,7 +14,7 @@ pub fn concise(value: f64, error: f64) -> String {
         return format!("{value} +- {error}");
     }
     if error == 0.0 {
-        return format!("{value}(0)");
+        return format!("{}(0)", round_for_writing(value));
     }
     let larger = value.abs().max(error);
     let exponent = decimal_exponent(larger);

@@ -10,6 +10,8 @@ pub struct SheetReport<'a> {
     pub estimates: &'a SheetEstimates,
     /// What each fit says, in the order of the registry.
     pub fits: &'a [Fitted],
+    /// Largest |q| that is shown, in 1/A, where the pipeline states one.
+    pub q_max: Option<f64>,
 }
 
 impl<'a> SheetReport<'a> {

@@ -77,7 +77,8 @@ fn rigidity(row: &SpectrumRow, thermal: f64, run: &RunEstimates) -> (Option<f64>
     )
 }
 
-fn is_inside(q: f64, [first, last]: [f64; 2]) -> bool {
+/// Whether |q| lies in a window, its ends included.
+pub(super) fn is_inside(q: f64, [first, last]: [f64; 2]) -> bool {
     q >= first * (1.0 - EDGE) && q <= last * (1.0 + EDGE)
 }
 
@@ -91,6 +92,7 @@ pub fn spectrum_csv(sheets: &[SheetReport<'_>]) -> String {
                 .rows
                 .iter()
                 .zip(points)
+                .filter(|(row, _)| sheet.q_max.is_none_or(|limit| row.length <= limit))
                 .map(|(row, point)| cells(&sheet.estimates.name, run, row, &point))
         })
     });

@@ -4,6 +4,7 @@ use plotters::style::{Color, RGBAColor};
 
 use crate::estimates::RunEstimates;
 use crate::fits::PlateCurve;
+use crate::report::spectrum_table::is_inside;
 use crate::report::{KappaPoint, SheetReport, kappa_points};
 
 use super::axis::{Axis, Scale};
@@ -40,7 +41,7 @@ pub fn kappa_figure(sheet: &SheetReport<'_>) -> Option<Figure> {
         .runs
         .iter()
         .enumerate()
-        .map(|(at, run)| drawn(at, run, sheet.plate_curve(&run.name)))
+        .map(|(at, run)| drawn(at, run, sheet.plate_curve(&run.name), sheet.q_max))
         .collect();
     let points = || runs.iter().flat_map(|run| &run.points);
     let x = Axis::around(Scale::Logarithmic, points().map(|point| point.q), 0.04)?;
@@ -67,11 +68,16 @@ pub fn kappa_figure(sheet: &SheetReport<'_>) -> Option<Figure> {
     }))
 }
 
-fn drawn<'a>(at: usize, run: &RunEstimates, curve: Option<&'a PlateCurve>) -> Drawn<'a> {
+fn drawn<'a>(at: usize, run: &RunEstimates, curve: Option<&'a PlateCurve>, q_max: Option<f64>) -> Drawn<'a> {
+    let shown = |point: &&KappaPoint| q_max.is_none_or(|limit| point.q <= limit);
     Drawn {
         label: run_label(run),
         marker: Marker::of_run(at),
-        points: kappa_points(run, curve).iter().filter_map(positive).collect(),
+        points: kappa_points(run, curve)
+            .iter()
+            .filter(shown)
+            .filter_map(positive)
+            .collect(),
         curve,
     }
 }
@@ -138,14 +144,14 @@ fn draw_points(canvas: &Canvas<'_>, frame: &PlotFrame, run: &Drawn<'_>) {
     }
 }
 
-/// The fitted curve where both axes show it.
+/// The fitted curve over its window, where both axes show it: beyond the window the fit says nothing.
 fn draw_curve(canvas: &Canvas<'_>, frame: &PlotFrame, run: &Drawn<'_>) {
     let Some(curve) = run.curve else { return };
     let places: Vec<_> = curve
         .q
         .iter()
         .zip(&curve.kappa)
-        .filter(|(q, kappa)| frame.x.shows(**q) && frame.y.shows(**kappa))
+        .filter(|(q, kappa)| frame.x.shows(**q) && frame.y.shows(**kappa) && is_inside(**q, curve.window))
         .map(|(q, kappa)| frame.place(*q, *kappa))
         .collect();
     if places.len() > 1 {
