@@ -25,6 +25,8 @@ pub struct Arguments {
 pub enum Command {
     /// The whole job: read, project, measure, fit, and write the output folder
     Run(RunArguments),
+    /// Parse and validate a pipeline, open every input, print the resolved plan and its cost; measure nothing
+    Check(CheckArguments),
 }
 
 /// Arguments of `planish run`.
@@ -36,6 +38,17 @@ pub struct RunArguments {
     /// Options that commands share.
     #[command(flatten)]
     pub shared: SharedOptions,
+}
+
+/// Arguments of `planish check`.
+#[derive(Clone, Debug, Args)]
+pub struct CheckArguments {
+    /// The pipeline file (TOML)
+    #[arg(value_name = "PIPELINE")]
+    pub pipeline: PathBuf,
+    /// Print the plan as JSON
+    #[arg(long)]
+    pub json: bool,
 }
 
 /// Options that commands share.

@@ -5,6 +5,7 @@ use std::io;
 
 use clap::Parser;
 
+use super::check::check;
 use super::run::run;
 use super::{Arguments, Command, ExitStatus, Terminal};
 
@@ -14,9 +15,10 @@ use super::{Arguments, Command, ExitStatus, Terminal};
 pub fn dispatch(words: impl IntoIterator<Item = OsString>) -> ExitStatus {
     let terminal = Terminal::detect();
     match Arguments::try_parse_from(words) {
-        Ok(Arguments {
-            command: Command::Run(arguments),
-        }) => run(&arguments, terminal),
+        Ok(Arguments { command }) => match command {
+            Command::Run(arguments) => run(&arguments, terminal),
+            Command::Check(arguments) => check(&arguments, terminal),
+        },
         Err(usage) => {
             let printed = usage.print();
             match printed {

@@ -1,13 +1,14 @@
 //! The command line: one file per command, exit status in one place.
 
 mod arguments;
+mod check;
 mod dispatch;
 mod exit_status;
 mod progress_bar;
 mod run;
 mod terminal;
 
-pub use arguments::{Arguments, Command, RunArguments, SharedOptions};
+pub use arguments::{Arguments, CheckArguments, Command, RunArguments, SharedOptions};
 pub use dispatch::dispatch;
 pub use exit_status::ExitStatus;
 pub use progress_bar::{PlainLines, ProgressBar, Quiet};

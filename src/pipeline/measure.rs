@@ -5,6 +5,7 @@ use std::sync::mpsc::{Receiver, SyncSender, sync_channel};
 
 use serde::{Deserialize, Serialize};
 
+use super::plan::Plan;
 use super::progress::Progress;
 use super::run_error::RunProblem;
 use crate::frames::{Frame, RunFrames, RunInput, SheetAtoms};
@@ -20,6 +21,18 @@ pub struct MeasureOptions {
     pub q_max: Option<f64>,
     /// Frames in a block.
     pub block_frames: usize,
+}
+
+impl MeasureOptions {
+    /// Those of a plan.
+    #[must_use]
+    pub fn of(plan: &Plan) -> Self {
+        Self {
+            positions: plan.project.positions,
+            q_max: plan.spectrum.q_max,
+            block_frames: plan.spectrum.block_frames,
+        }
+    }
 }
 
 /// A run as measured: its records, and what the frames said of the sheet.
@@ -139,7 +152,7 @@ pub fn measure_run(
 }
 
 /// Reads the reference frames and finds the sheet in them.
-fn project_reference(
+pub(super) fn project_reference(
     frames: &mut RunFrames,
     atoms: &SheetAtoms,
     input: &RunInput,

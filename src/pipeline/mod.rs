@@ -22,6 +22,7 @@ mod run_error;
 mod run_log;
 mod run_records;
 mod stored_run;
+mod survey;
 mod table_reader;
 mod wording;
 
@@ -34,4 +35,5 @@ pub use plan::{Plan, ProjectOptions, RunPlan, SheetPlan, SpectrumOptions};
 pub use progress::Progress;
 pub use run::{RunOptions, RunOutcome, run};
 pub use run_error::{RunError, RunProblem};
+pub use survey::{RunSurvey, survey, survey_run};
 pub use table_reader::Written;

@@ -44,11 +44,7 @@ pub fn stored_or_measured(
         progress.note(&format!("{}/{}: taken from stored blocks", sheet.name, run.name));
         return Ok(Ok(stored));
     }
-    let options = MeasureOptions {
-        positions: plan.project.positions,
-        q_max: plan.spectrum.q_max,
-        block_frames: plan.spectrum.block_frames,
-    };
+    let options = MeasureOptions::of(plan);
     let label = RunLabel {
         sheet: &sheet.name,
         run: &run.name,

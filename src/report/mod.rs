@@ -8,6 +8,7 @@ mod page;
 mod runs_table;
 mod sheet_report;
 mod spectrum_table;
+mod survey_table;
 mod table;
 mod terminal;
 
@@ -19,4 +20,5 @@ pub use page::{PageContent, PageSheet, page};
 pub use runs_table::{RunSummary, runs_csv};
 pub use sheet_report::SheetReport;
 pub use spectrum_table::{KappaPoint, kappa_points, spectrum_csv};
+pub use survey_table::survey_table;
 pub use terminal::{SummaryStyle, summary};

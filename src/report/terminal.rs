@@ -188,7 +188,7 @@ fn notes(sheet: &Sheet) -> Vec<String> {
         .collect()
 }
 
-fn plain_table(style: SummaryStyle) -> Table {
+pub(super) fn plain_table(style: SummaryStyle) -> Table {
     let mut table = Table::new();
     table
         .load_style(LINES)
