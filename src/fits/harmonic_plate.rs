@@ -2,7 +2,7 @@
 
 use nalgebra::{DMatrix, DVector};
 
-use super::mode_verdict::advice;
+use super::mode_verdict::{advice, too_few_frames};
 use super::plate_covariance::PlateCovariance;
 use super::plate_likelihood::{LikelihoodFit, ModelPoint, PowerModel, maximise};
 use super::plate_run::{self, PlateRun, judged, without_value};
@@ -45,6 +45,10 @@ impl Fit for HarmonicPlate {
 }
 
 fn fit_run(run: &RunEstimates, options: &FitOptions) -> Fitted {
+    // Without this the reason given would be that no plate fits what is mostly noise.
+    if let Some(reason) = too_few_frames(run.frames) {
+        return refused(run, &reason);
+    }
     let Some(plate_run) = PlateRun::new(run, options) else {
         return refused(
             run,

@@ -61,6 +61,13 @@ pub fn slowest<'a>(window: &[&'a ModeEstimate]) -> Option<&'a ModeEstimate> {
         .copied()
 }
 
+/// Why a run with `frames` frames after its cut gives no value, where it has too few.
+#[must_use]
+pub fn too_few_frames(frames: usize) -> Option<String> {
+    (frames < LEAST_FRAMES)
+        .then(|| format!("{frames} frames after the equilibration cut, at least {LEAST_FRAMES} are needed"))
+}
+
 /// Judges a value read from the modes `window` of a run with `frames` frames after its cut.
 ///
 /// Good: at least 20 effective samples of the slowest mode, its split R-hat below 1.1, six modes. Unusable, without a value:
@@ -75,9 +82,7 @@ pub fn judge(window: &[&ModeEstimate], frames: usize) -> Judgement {
         judgement.at_most(Verdict::Unusable, "no mode in the window");
         return judgement;
     };
-    if frames < LEAST_FRAMES {
-        let reason =
-            format!("{frames} frames after the equilibration cut, at least {LEAST_FRAMES} are needed");
+    if let Some(reason) = too_few_frames(frames) {
         judgement.at_most(Verdict::Unusable, reason);
     }
     let samples = slowest.effective_samples;

@@ -3,7 +3,7 @@
 use nalgebra::DVector;
 use rayon::prelude::*;
 
-use super::mode_verdict::{Judgement, advice};
+use super::mode_verdict::{Judgement, advice, too_few_frames};
 use super::plate_covariance::PlateCovariance;
 use super::plate_run::{self, PlateRun, judged, without_value};
 use super::ripple_model::{PARAMETERS, RippleFit, RippleModel, YoungsLimit};
@@ -65,6 +65,10 @@ impl Fit for RippledPlate {
 }
 
 fn fit_run(run: &RunEstimates, options: &FitOptions) -> Fitted {
+    // Without this the reason given would be that no plate fits what is mostly noise.
+    if let Some(reason) = too_few_frames(run.frames) {
+        return refused(run, &reason);
+    }
     let Some(plate_run) = PlateRun::new(run, options) else {
         return refused(
             run,
