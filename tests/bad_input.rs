@@ -200,7 +200,7 @@ fn ribbons_and_flakes_are_refused(#[case] open: &[usize], #[case] said: &str) {
         RUN,
         &[
             "ribbons and flakes are not supported yet",
-            "frame 0 of ",
+            ", frame 0",
             "run.xyz",
             said,
         ],
@@ -272,7 +272,7 @@ fn a_hop_names_the_frame_and_costs_the_verdict() {
     let runs = Table::read(&job.path("out").join("runs.csv"));
     let row = runs.of_run("sheet", "run").next().expect("a row");
     for note in [&area.note, row.text("note")] {
-        for part in ["frame 45 of ", "run.xyz", "atom 101 left its site"] {
+        for part in [", frame 45", "run.xyz", "atom 101 left its site"] {
             assert!(note.contains(part), "no {part:?} in: {note}");
         }
     }
@@ -285,7 +285,7 @@ fn a_normal_that_is_not_the_thin_axis_is_refused() {
     let pipeline = pipeline(&[RUN]).replace("name = \"sheet\"", "name = \"sheet\"\nnormal = \"a\"");
     let finished = job.run(&pipeline).expect(2);
     finished.says(&[
-        "frame 0 of ",
+        ", frame 0",
         "run.xyz",
         "the normal axis a is not the thin one",
         "set normal = \"c\"",
@@ -375,6 +375,32 @@ fn one_bad_run_does_not_lose_the_others() {
             run == "bad",
             "{}",
             row.text("note")
+        );
+    }
+}
+
+/// Results hold no path of the machine: what is said of a refused run names files as the pipeline does.
+#[test]
+fn results_name_files_from_the_pipeline() {
+    let folder = tempfile::tempdir().expect("a temporary folder");
+    std::fs::write(folder.path().join("words.xtc"), "this is no trajectory").expect("written");
+    let pipeline = folder.path().join("job.toml");
+    let text = "[pipeline]\nname = \"job\"\n[[sheet]]\nname = \"s\"\n[[sheet.run]]\ntrajectory = \"words.xtc\"\n\
+                temperature = \"300 K\"\n";
+    std::fs::write(&pipeline, text).expect("written");
+    let status = std::process::Command::new(env!("CARGO_BIN_EXE_planish"))
+        .arg("run")
+        .arg(&pipeline)
+        .arg("--quiet")
+        .status()
+        .expect("the program starts");
+    assert_eq!(status.code(), Some(2));
+    for name in ["parameters.toml", "runs.csv", "report.html"] {
+        let text = std::fs::read_to_string(folder.path().join("job.out").join(name)).expect(name);
+        assert!(text.contains("words.xtc"), "{name}");
+        assert!(
+            !text.contains(folder.path().to_str().expect("a plain path")),
+            "{name}"
         );
     }
 }

@@ -1,5 +1,6 @@
 //! `planish check`: what the plan of a pipeline shows, and that every problem is told at once.
 
+use std::fmt::Write;
 use std::process::{Command, Output};
 
 use tempfile::TempDir;
@@ -67,8 +68,10 @@ fn every_problem_of_the_inputs_is_told() {
     ];
     let mut toml = "[pipeline]\nname = \"job\"\n[[sheet]]\nname = \"s\"\n".to_owned();
     for (index, run) in runs.iter().enumerate() {
-        toml +=
-            &format!("[[sheet.run]]\nname = \"r{index}\"\ntrajectory = \"{run}\"\ntemperature = \"300 K\"\n");
+        let _ = write!(
+            toml,
+            "[[sheet.run]]\nname = \"r{index}\"\ntrajectory = \"{run}\"\ntemperature = \"300 K\"\n"
+        );
     }
     std::fs::write(&pipeline, toml).expect("written");
     let output = check(&[pipeline.to_str().expect("a plain path")]);

@@ -2,7 +2,7 @@
 
 use super::run_condition::run_condition;
 use super::series_verdict::judge;
-use super::{Fit, FitOptions, Fitted, FittedValue, Quantity, Verdict};
+use super::{Fit, FitOptions, Fitted, FittedValue, PlateModel, Quantity, Verdict};
 use crate::estimates::{RunEstimates, SheetEstimates, Tension};
 use crate::units::{KG_PER_M2_PER_GRAM_PER_MOL_A2, N_PER_M_PER_EV_PER_A2};
 
@@ -14,12 +14,15 @@ impl Fit for AreaFit {
         "area"
     }
 
-    fn fit(&self, sheet: &SheetEstimates, _options: &FitOptions) -> Fitted {
+    fn fit(&self, sheet: &SheetEstimates, options: &FitOptions) -> Fitted {
         let mut quantities = Vec::new();
         for run in &sheet.runs {
             quantities.push(area_per_atom(run));
             quantities.extend(areal_density(run));
-            quantities.push(tension(run));
+            // A harmonic plate fits the tension to the heights: that one stands then.
+            if options.plate != PlateModel::Harmonic {
+                quantities.push(tension(run));
+            }
         }
         Fitted {
             quantities,

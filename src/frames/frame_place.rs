@@ -16,7 +16,7 @@ pub struct FramePlace {
 
 impl fmt::Display for FramePlace {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "frame {} of {}", self.frame_in_file, self.path.display())?;
+        write!(f, "{}, frame {}", self.path.display(), self.frame_in_file)?;
         match self.time_ps {
             // Times stored in single precision carry digits that mean nothing.
             Some(time) => write!(f, " (t = {} ps)", (time * 1e6).round() / 1e6),

@@ -1,5 +1,7 @@
 //! From the records of a sheet's runs to its estimates: reservations stated, replicas pooled.
 
+use std::path::Path;
+
 use super::held_tension::{HeldTension, settle};
 use super::measure::MeasuredRun;
 use super::plan::{RunPlan, SheetPlan};
@@ -45,14 +47,37 @@ impl RunFault {
     }
 }
 
+impl RunAccount {
+    /// Takes the pipeline's folder off the paths in every phrase.
+    fn write_paths_from(&mut self, folder: &Path) {
+        if folder.as_os_str().is_empty() {
+            return;
+        }
+        let prefix = folder.join("").display().to_string();
+        let relative = |text: &mut String| *text = text.replace(&prefix, "");
+        self.notes.iter_mut().chain(&mut self.warnings).for_each(relative);
+        match &mut self.outcome {
+            Ok(estimates) => estimates.reservations.iter_mut().for_each(relative),
+            Err(RunFault::Refused(reason) | RunFault::TooShort(reason)) => relative(reason),
+        }
+    }
+}
+
 /// Estimates every run of a sheet and pools replicas.
+///
+/// `folder` is the pipeline's: paths in what the runs have to say are written relative to it, since that goes into results,
+/// which are the same wherever the pipeline lies.
 #[must_use]
-pub fn estimate_sheet(sheet: &SheetPlan, records: Vec<RunRecords>) -> (SheetEstimates, Vec<RunAccount>) {
+pub fn estimate_sheet(
+    sheet: &SheetPlan,
+    records: Vec<RunRecords>,
+    folder: &Path,
+) -> (SheetEstimates, Vec<RunAccount>) {
     let mut accounts: Vec<RunAccount> = sheet
         .runs
         .iter()
         .zip(records)
-        .map(|(run, records)| estimate_run(run, records))
+        .map(|(run, records)| estimate_run(run, records, folder))
         .collect();
     let mut runs = Vec::new();
     for run in sheet.runs.iter().filter(|run| run.replica_of.is_none()) {
@@ -86,7 +111,7 @@ pub fn estimate_sheet(sheet: &SheetPlan, records: Vec<RunRecords>) -> (SheetEsti
     )
 }
 
-fn estimate_run(run: &RunPlan, records: RunRecords) -> RunAccount {
+fn estimate_run(run: &RunPlan, records: RunRecords, folder: &Path) -> RunAccount {
     let mut account = RunAccount {
         run: run.name.clone(),
         pooled_as: run.replica_of.clone().unwrap_or_else(|| run.name.clone()),
@@ -104,6 +129,7 @@ fn estimate_run(run: &RunPlan, records: RunRecords) -> RunAccount {
             estimates_of(run, &measured, &mut account)
         }
     };
+    account.write_paths_from(folder);
     account
 }
 

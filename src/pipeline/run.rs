@@ -72,7 +72,7 @@ pub fn run(plan: &Plan, options: &RunOptions, progress: &dyn Progress) -> Result
             )?);
             log.mark(&format!("measured {}/{}", sheet.name, run.name));
         }
-        let (estimates, accounts) = estimate_sheet(sheet, records);
+        let (estimates, accounts) = estimate_sheet(sheet, records, plan.folder());
         let fits = fit_sheet(&estimates, &accounts, &plan.fit);
         log.mark(&format!("fitted {}", sheet.name));
         sheets.push(finish_sheet(plan, sheet, estimates, fits, accounts));

@@ -33,7 +33,7 @@ fn from_to_and_stride_choose_frames_by_time() {
     assert!((run.first_time_ps().expect("times") - 2.4).abs() < 1e-6);
     assert_eq!(
         run.place(3).to_string(),
-        format!("frame 15 of {} (t = 6 ps)", path.display())
+        format!("{}, frame 15 (t = 6 ps)", path.display())
     );
 }
 
