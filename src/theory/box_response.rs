@@ -56,15 +56,34 @@ impl BoxScsa {
                 } else {
                     0.0
                 },
-                tension: if parameter == PlateParameter::Tension {
-                    1.0
-                } else {
-                    0.0
+                tension: match parameter {
+                    PlateParameter::Tension => vec![1.0; self.lengths.len()],
+                    _ => vec![0.0; self.lengths.len()],
                 },
             };
             self.response(solution, &iterate, &change)
         };
         parameters.iter().map(respond).collect()
+    }
+
+    /// Derivatives at a solution by the stresses of the cell in Voigt order 1, 2, 6, per eV/A^2: the tension of mode p is
+    /// that of kB T/G(p) = kappa(p) p^4 + sigma_kl p_k p_l, so that a small stress acts as p_k p_l/p^2.
+    pub(super) fn stress_responses(&self, solution: &BoxSolution) -> Result<[Response; 3], ScsaError> {
+        let iterate = self.iterate(&solution.state, &solution.kappa)?;
+        let strains = self.convolution.strains();
+        let respond = |component: usize| {
+            let change = Change {
+                bare: vec![0.0; self.lengths.len()],
+                ln_youngs: 0.0,
+                tension: strains
+                    .iter()
+                    .zip(&self.lengths)
+                    .map(|(strain, q)| strain[component] / (q * q))
+                    .collect(),
+            };
+            self.response(solution, &iterate, &change)
+        };
+        Ok([respond(0)?, respond(1)?, respond(2)?])
     }
 
     /// Changes of ln power and ln kappa of every mode under a small change of the bare plate.
@@ -76,13 +95,14 @@ impl BoxScsa {
     ) -> Result<Response, ScsaError> {
         let state = &solution.state;
         let ln_power_of = |ln_kappa: &[f64]| -> Vec<f64> {
-            let per_mode = |((&q, kappa), d): ((&f64, &f64), &f64)| {
-                -(kappa * q * q * d + change.tension) / (kappa * q * q + state.tension)
+            let per_mode = |(((&q, kappa), d), tension): (((&f64, &f64), &f64), &f64)| {
+                -(kappa * q * q * d + tension) / (kappa * q * q + state.tension)
             };
             self.lengths
                 .iter()
                 .zip(&solution.kappa)
                 .zip(ln_kappa)
+                .zip(&change.tension)
                 .map(per_mode)
                 .collect()
         };
@@ -158,8 +178,8 @@ struct Change {
     bare: Vec<f64>,
     /// Of ln Y.
     ln_youngs: f64,
-    /// Of the tension, in eV/A^2.
-    tension: f64,
+    /// Of the tension that each mode feels, in eV/A^2.
+    tension: Vec<f64>,
 }
 
 impl Change {
@@ -171,8 +191,7 @@ impl Change {
             .zip(&solution.kappa)
             .map(|(bare, kappa)| (bare / kappa).abs());
         let softest = solution.kappa.iter().copied().fold(f64::INFINITY, f64::min);
-        direct
-            .fold(self.ln_youngs.abs(), f64::max)
-            .max(self.tension.abs() / softest)
+        let tension = self.tension.iter().map(|tension| tension.abs() / softest);
+        direct.chain(tension).fold(self.ln_youngs.abs(), f64::max)
     }
 }

@@ -1,5 +1,6 @@
 //! Plate and membrane theory: formulas only, with their prefactors, units and sources. Knows nothing of frames.
 
+mod box_compliance;
 mod box_modes;
 mod box_response;
 pub mod box_scsa;

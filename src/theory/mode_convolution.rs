@@ -80,6 +80,17 @@ impl ModeConvolution {
         }
     }
 
+    /// p_i p_j of each mode in Voigt order 1, 2, 6 with the sixth doubled, in A^-2: twice the strain that |h_p|^2 hides.
+    pub(super) fn strains(&self) -> Vec<[f64; 3]> {
+        let strain = |&[x, y]: &[f64; 2]| [x * x, y * y, 2.0 * x * y];
+        self.wave_vectors.iter().map(strain).collect()
+    }
+
+    /// Weight of each mode.
+    pub(super) fn weights(&self) -> &[f64] {
+        &self.weights
+    }
+
     /// Transforms of the propagator G, given on every mode; each mode counts with its weight.
     pub(super) fn moments(&self, propagator: &[f64]) -> MomentTransforms {
         let moment = |mode: usize, j: i32| {

@@ -143,6 +143,14 @@ impl PlaneModuli {
         self.lambda / (2.0 * self.mu + self.lambda)
     }
 
+    /// Compliance matrix in Voigt order 1, 2, 6: S11 = S22 = 1/Y, S12 = -nu/Y, S66 = 1/mu.
+    #[must_use]
+    pub fn compliance(self) -> [[f64; 3]; 3] {
+        let s11 = 1.0 / self.youngs();
+        let s12 = -self.poisson() * s11;
+        [[s11, s12, 0.0], [s12, s11, 0.0], [0.0, 0.0, 1.0 / self.mu]]
+    }
+
     /// Stiffness matrix in Voigt order 1, 2, 6: C11 = C22 = lambda + 2 mu, C12 = lambda, C66 = mu.
     #[must_use]
     pub fn stiffness(self) -> [[f64; 3]; 3] {
