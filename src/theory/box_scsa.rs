@@ -121,16 +121,18 @@ impl BoxScsa {
         self.solve_from(state, self.crossover(state), None)
     }
 
-    /// Solves the equations of a sheet with the bare Poisson ratio `poisson` in a fixed cell, whose mean stress is the tension
-    /// of `state` (see `clamped_cell`). `modes` are those that this solver was made for.
+    /// Solves the equations of a sheet with the bare Poisson ratio `poisson` in a cell of which the strains e1, e2, e6 in
+    /// `clamped` are held, at the mean stress that is the tension of `state` (see `clamped_cell`); from a solution nearby where there is
+    /// one.
     ///
     /// # Errors
     /// See [`ScsaError`].
     pub fn solve_clamped(
         &self,
-        modes: &BoxModes,
         state: &PlateState,
+        clamped: [bool; 3],
         poisson: f64,
+        near: Option<&BoxSolution>,
     ) -> Result<BoxSolution, ScsaError> {
         if poisson.is_nan() || poisson.abs() >= 1.0 {
             return Err(ScsaError::Parameter {
@@ -138,8 +140,9 @@ impl BoxScsa {
                 value: 1.0 - poisson * poisson,
             });
         }
-        let cell = ClampedCell::new(modes, poisson);
-        self.solve_from(state, self.crossover(state), Some(&cell))
+        let cell = ClampedCell::new(&self.convolution, self.area, clamped, poisson);
+        let start = near.map_or_else(|| self.crossover(state), |near| self.start_near(state, near));
+        self.solve_from(state, start, clamped.contains(&true).then_some(&cell))
     }
 
     /// Solves the equations from the solution of a plate nearby, on the same modes.
@@ -147,13 +150,16 @@ impl BoxScsa {
     /// # Errors
     /// See [`ScsaError`].
     pub fn solve_near(&self, state: &PlateState, near: &BoxSolution) -> Result<BoxSolution, ScsaError> {
-        let start = self
-            .lengths
+        self.solve_from(state, self.start_near(state, near), None)
+    }
+
+    /// ln kappa(q) of a plate nearby, the change of the bare rigidity taken over.
+    fn start_near(&self, state: &PlateState, near: &BoxSolution) -> Vec<f64> {
+        self.lengths
             .iter()
             .zip(&near.kappa)
             .map(|(&q, kappa)| (kappa * state.bare_kappa(q) / near.state.bare_kappa(q)).ln())
-            .collect();
-        self.solve_from(state, start, None)
+            .collect()
     }
 
     /// ln kappa(q) of the closed form, to start from.
@@ -169,7 +175,7 @@ impl BoxScsa {
         &self,
         state: &PlateState,
         start: Vec<f64>,
-        clamped: Option<&ClampedCell>,
+        clamped: Option<&ClampedCell<'_>>,
     ) -> Result<BoxSolution, ScsaError> {
         check(state)?;
         let bare: Vec<f64> = self.lengths.iter().map(|&q| state.bare_kappa(q)).collect();

@@ -1,6 +1,6 @@
-//! A fixed cell: the ripples' mean strain has no cell to relax into, and stiffens the longest waves.
+//! Clamped strains of the cell: there the ripples' mean strain has no cell to relax into, and stiffens the longest waves.
 //!
-//! In a cell whose strain is clamped the energy gains the q = 0 term that a free cell relaxes away,
+//! Where components of the cell's strain are clamped the energy gains the q = 0 term that a free cell relaxes away,
 //!
 //! ```text
 //! (A/2) e.C.e,   e_ij = mean strain + (1/2) sum_p p_i p_j |h_p|^2
@@ -13,51 +13,65 @@
 //! kappa(k) += (1/A) khat_i khat_j khat_k khat_l C^R_ijkl G(k)
 //! C^R = (C^-1 + Pi_0)^-1,   Pi_0,ijkl = 1/(2 kB T A) sum_p p_i p_j p_k p_l G(p)^2
 //! ```
+//!
+//! where the inverse is that of the clamped components' block alone: free strains relax at constant stress.
 
-use nalgebra::{Matrix3, Vector3};
+use nalgebra::{DMatrix, Matrix3, Vector3};
 
-use super::{BoxModes, PlaneModuli, PlateState};
+use super::mode_convolution::ModeConvolution;
+use super::{PlaneModuli, PlateState};
 
-/// The clamped strain of a box, all components of it, at the mean stress of the plate's tension.
-pub(super) struct ClampedCell {
+/// The clamped strains of a box, at the mean stress of the plate's tension.
+pub(super) struct ClampedCell<'a> {
+    convolution: &'a ModeConvolution,
     area: f64,
-    /// p_i p_j of each mode in Voigt order 1, 2, 6 with the sixth doubled, in A^-2.
-    strains: Vec<Vector3<f64>>,
-    weights: Vec<f64>,
+    /// Which of e1, e2, e6.
+    clamped: Vec<usize>,
     /// Of the bare sheet, within (-1, 1).
     poisson: f64,
 }
 
-impl ClampedCell {
-    pub(super) fn new(modes: &BoxModes, poisson: f64) -> Self {
-        let strain = |[x, y]: [f64; 2]| Vector3::new(x * x, y * y, 2.0 * x * y);
+impl<'a> ClampedCell<'a> {
+    pub(super) fn new(convolution: &'a ModeConvolution, area: f64, clamped: [bool; 3], poisson: f64) -> Self {
         Self {
-            area: modes.cell.area().abs(),
-            strains: modes.wave_vectors().into_iter().map(strain).collect(),
-            weights: modes.weights.clone(),
+            convolution,
+            area,
+            clamped: (0..3).filter(|&component| clamped[component]).collect(),
             poisson,
         }
     }
 
     /// What the clamp adds to kappa(k) of each mode, in eV, given G of each mode in A^4.
     pub(super) fn self_energy(&self, state: &PlateState, propagator: &[f64]) -> Vec<f64> {
-        let stiffness = PlaneModuli::from_youngs_and_poisson(state.youngs, self.poisson).stiffness();
-        let stiffness = Matrix3::from_fn(|i, j| stiffness[i][j]);
-        let mut screening = Matrix3::zeros();
-        for ((strain, weight), g) in self.strains.iter().zip(&self.weights).zip(propagator) {
+        let strains: Vec<Vector3<f64>> = self
+            .convolution
+            .strains()
+            .into_iter()
+            .map(Vector3::from)
+            .collect();
+        let mut compliance = Matrix3::zeros();
+        for ((strain, weight), g) in strains.iter().zip(self.convolution.weights()).zip(propagator) {
             // q and -q both count.
-            screening += strain * strain.transpose() * (2.0 * weight * g * g);
+            compliance += strain * strain.transpose() * (2.0 * weight * g * g);
         }
-        screening *= 0.5 / (state.thermal_energy() * self.area);
-        // (C^-1 + Pi_0)^-1 = (1 + C Pi_0)^-1 C: one plus a product of positive matrices is never singular.
-        let screened = (Matrix3::identity() + stiffness * screening)
-            .try_inverse()
-            .expect("the product of two positive matrices has no negative eigenvalue")
-            * stiffness;
+        compliance *= 0.5 / (state.thermal_energy() * self.area);
+        let bare = PlaneModuli::from_youngs_and_poisson(state.youngs, self.poisson).compliance();
+        compliance += Matrix3::from_fn(|i, j| bare[i][j]);
+        let size = self.clamped.len();
+        let block = DMatrix::from_fn(size, size, |i, j| compliance[(self.clamped[i], self.clamped[j])])
+            .cholesky()
+            .expect("the sum of a positive and a non-negative matrix is positive")
+            .inverse();
+        let mut screened = Matrix3::zeros();
+        for (i, &row) in self.clamped.iter().enumerate() {
+            for (j, &column) in self.clamped.iter().enumerate() {
+                screened[(row, column)] = block[(i, j)];
+            }
+        }
         let per_mode = |(strain, g): (&Vector3<f64>, &f64)| {
             let square = strain[0] + strain[1];
             strain.dot(&(screened * strain)) / (square * square) * g / self.area
         };
-        self.strains.iter().zip(propagator).map(per_mode).collect()
+        strains.iter().zip(propagator).map(per_mode).collect()
     }
 }
