@@ -127,7 +127,7 @@ fn judge(run: &RunEstimates, free: &[usize]) -> Judgement {
 }
 
 /// The largest modulus 1/S_ii implied by a free strain, in N/m, where it is beyond any known sheet's.
-fn too_stiff(strain: &StrainEstimate, free: &[usize], temperature: f64) -> Option<f64> {
+pub(super) fn too_stiff(strain: &StrainEstimate, free: &[usize], temperature: f64) -> Option<f64> {
     let compliance = Compliance::new(strain, free, temperature);
     let implied = (0..free.len())
         .map(|a| 1.0 / compliance.element(a, a))

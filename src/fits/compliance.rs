@@ -37,10 +37,14 @@ impl Compliance {
         self.matrix[(a, b)]
     }
 
+    /// Effective samples of the whole: the harmonic mean of the products', the n whose variance is the mean of theirs.
+    pub(super) fn samples(&self) -> f64 {
+        self.samples.len() as f64 / self.samples.map(|n| 1.0 / n).sum()
+    }
+
     /// C = S^-1; `None` where S is not positive definite or the samples are too few for d strains.
     pub(super) fn stiffness(&self) -> Option<Stiffness> {
-        // Harmonic mean of the products' samples: the n whose variance is the mean of theirs.
-        let samples = self.samples.len() as f64 / self.samples.map(|n| 1.0 / n).sum();
+        let samples = self.samples();
         if samples - self.matrix.nrows() as f64 <= FEWEST_DEGREES {
             return None;
         }

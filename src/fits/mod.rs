@@ -3,10 +3,17 @@
 //! To add a fit: one new file that implements [`Fit`], one `mod` line and one row in [`registry`].
 
 mod area;
+mod cell_likelihood;
 mod cell_stiffness;
 mod compliance;
 mod excess_area;
 mod harmonic_plate;
+mod joint_covariance;
+mod joint_likelihood;
+mod joint_plate;
+mod joint_quality;
+mod joint_quantities;
+mod joint_run;
 mod lack_of_fit;
 pub mod mode_verdict;
 mod outcome;
@@ -25,6 +32,7 @@ pub use area::AreaFit;
 pub use cell_stiffness::CellStiffnessFit;
 pub use excess_area::ExcessAreaFit;
 pub use harmonic_plate::HarmonicPlate;
+pub use joint_plate::JointPlateFit;
 pub use outcome::{AreaCurve, Covariance, FitOptions, Fitted, PlateCurve, PlateModel};
 pub use quantity::{Condition, FittedValue, NORMAL_95, Quantity, Verdict};
 pub use rippled_plate::RippledPlate;
@@ -48,6 +56,7 @@ pub fn registry() -> Vec<Box<dyn Fit>> {
     vec![
         Box::new(RippledPlate),
         Box::new(HarmonicPlate),
+        Box::new(JointPlateFit),
         Box::new(CellStiffnessFit),
         Box::new(AreaFit),
         Box::new(ThermalExpansionFit),

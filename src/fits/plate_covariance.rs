@@ -14,7 +14,7 @@ use super::plate_likelihood::{LikelihoodFit, ModeSample};
 const LEAST_BLOCKS: usize = 16;
 
 /// Fewer blocks than this say nothing about a variance.
-const FEWEST_BLOCKS: usize = 5;
+pub(super) const FEWEST_BLOCKS: usize = 5;
 
 /// Covariances of the parameters of a [`LikelihoodFit`].
 #[derive(Clone, Debug, PartialEq)]
@@ -126,7 +126,7 @@ fn jackknife(
 }
 
 /// Block means and frames after joining neighbours pairwise.
-fn joined(block_powers: &Array2<f64>, block_frames: &[usize]) -> (Array2<f64>, Vec<f64>) {
+pub(super) fn joined(block_powers: &Array2<f64>, block_frames: &[usize]) -> (Array2<f64>, Vec<f64>) {
     let mut powers = block_powers.clone();
     let mut frames: Vec<f64> = block_frames.iter().map(|&frames| frames as f64).collect();
     while frames.len() >= 2 * LEAST_BLOCKS {
@@ -146,7 +146,7 @@ fn joined(block_powers: &Array2<f64>, block_frames: &[usize]) -> (Array2<f64>, V
 }
 
 /// Inverse of a positive matrix, scaled to a unit diagonal first: its parameters have different units.
-fn inverse(information: &DMatrix<f64>) -> Option<DMatrix<f64>> {
+pub(super) fn inverse(information: &DMatrix<f64>) -> Option<DMatrix<f64>> {
     let scale = information.diagonal().map(|entry| 1.0 / entry.sqrt());
     if scale.iter().any(|scale| !scale.is_finite()) {
         return None;

@@ -177,7 +177,7 @@ impl<M: PowerModel> LeastSquaresProblem<f64, Dyn, Dyn> for Problem<'_, M> {
 /// How near, as a share of the range, a start may lie to a limit: at the limit itself the map has no slope.
 const START_MARGIN: f64 = 1e-3;
 
-fn to_free(value: f64, limits: Limits) -> f64 {
+pub(super) fn to_free(value: f64, limits: Limits) -> f64 {
     limits.map_or(value, |[lower, upper]| {
         let share = ((value - lower) / (upper - lower)).clamp(START_MARGIN, 1.0 - START_MARGIN);
         (share / (1.0 - share)).ln()
@@ -185,7 +185,7 @@ fn to_free(value: f64, limits: Limits) -> f64 {
 }
 
 /// The parameter and its derivative by the free variable.
-fn from_free(free: f64, limits: Limits) -> [f64; 2] {
+pub(super) fn from_free(free: f64, limits: Limits) -> [f64; 2] {
     limits.map_or([free, 1.0], |[lower, upper]| {
         let share = 1.0 / (1.0 + (-free).exp());
         [
