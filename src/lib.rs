@@ -21,6 +21,7 @@
 //! | [`parameters`] | the parameter file |
 //! | [`report`] | tables, figures, page, terminal |
 //! | [`pipeline`] | the pipeline file as written, the plan as resolved, and the run |
+//! | [`mint`] | synthetic sheets whose parameters are known |
 //! | [`cli`] | one file per command |
 //!
 //! Leaves that any of them may use, and that know nothing of frames: [`theory`] (formulas), [`statistics`]
@@ -35,6 +36,7 @@ pub mod estimates;
 pub mod fits;
 pub mod frames;
 pub mod measurements;
+pub mod mint;
 pub mod numerics;
 pub mod parameters;
 pub mod pipeline;

@@ -17,7 +17,7 @@ const LEVELS: [&[&str]; 12] = [
     &["fits"],
     &["parameters"],
     &["report"],
-    &["pipeline"],
+    &["pipeline", "mint"],
     &["cli"],
 ];
 

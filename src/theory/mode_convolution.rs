@@ -16,6 +16,7 @@ use num_complex::Complex64;
 use rustfft::{Fft, FftPlanner};
 
 use super::BoxModes;
+use crate::numerics::fast_length;
 
 /// binomial(4, j) (-1)^j.
 const EXPANSION: [f64; 5] = [1.0, -4.0, 6.0, -4.0, 1.0];
@@ -179,19 +180,4 @@ fn transposed(grid: &[Complex64], rows: usize, columns: usize) -> Vec<Complex64>
         }
     }
     turned
-}
-
-/// The least product of 2, 3 and 5 that is not below `least`: lengths for which the transform is fast.
-fn fast_length(least: usize) -> usize {
-    (least..=least.next_power_of_two())
-        .find(|&length| {
-            let mut rest = length;
-            for factor in [2, 3, 5] {
-                while rest % factor == 0 {
-                    rest /= factor;
-                }
-            }
-            rest == 1
-        })
-        .expect("the range ends on a power of two")
 }
