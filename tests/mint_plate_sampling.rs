@@ -293,3 +293,45 @@ fn the_box_scsa_is_right_within_three_per_cent() {
         );
     }
 }
+
+/// The ripples' part of the compliance of a free cell, (A/kB T) times the covariance of their mean strain, at 300 K: S11
+/// 1.97 +- 0.04, S12 0.04 +- 0.02, S66 1.39 +- 0.02 (1e-3 m/N), from direct sampling by an independent numpy program.
+#[test]
+fn the_cell_is_as_soft_as_an_independent_program_says() {
+    let modes = BoxModes::within(square(52.0), 1.2);
+    let mut chain = HybridMonteCarlo::equilibrated(&modes, boron_nitride(300.0), POISSON, CellHold::Free, 6)
+        .expect("a sound plate");
+    let strains: Vec<[f64; 3]> = (0..12_000)
+        .map(|_| {
+            chain.advance();
+            chain.plate().ripple_strain(chain.heights())
+        })
+        .collect();
+    let mean = [0, 1, 2].map(|i: usize| strains.iter().map(|e| e[i]).sum::<f64>() / strains.len() as f64);
+    let thermal = chain.plate().state().thermal_energy();
+    // eV/A^2 to 1e-3 m/N, the inverse way.
+    let unit = 1e3 * modes.cell.area() / thermal / N_PER_M_PER_EV_PER_A2;
+    let compliance = |i: usize, j: usize| {
+        let products: Vec<f64> = strains
+            .chunks(strains.len() / BLOCKS)
+            .map(|block| {
+                let sum: f64 = block.iter().map(|e| (e[i] - mean[i]) * (e[j] - mean[j])).sum();
+                unit * sum / block.len() as f64
+            })
+            .collect();
+        mean_and_error(&products)
+    };
+    for (i, j, expected, error) in [
+        (0, 0, 1.97, 0.04_f64),
+        (1, 1, 1.97, 0.04),
+        (0, 1, 0.04, 0.02),
+        (2, 2, 1.39, 0.02),
+    ] {
+        let (found, own_error) = compliance(i, j);
+        assert!(own_error < 0.1, "S{i}{j} {found} +- {own_error}");
+        assert!(
+            (found - expected).abs() < 3.0 * error.hypot(own_error),
+            "S{i}{j}: {found} +- {own_error}, expected {expected} +- {error}"
+        );
+    }
+}

@@ -5,6 +5,8 @@ use std::path::PathBuf;
 
 use clap::{Args, Parser, Subcommand};
 
+use super::MintArguments;
+
 /// The command line as parsed.
 #[derive(Clone, Debug, Parser)]
 #[command(
@@ -27,6 +29,8 @@ pub enum Command {
     Run(RunArguments),
     /// Parse and validate a pipeline, open every input, print the resolved plan and its cost; measure nothing
     Check(CheckArguments),
+    /// Write synthetic trajectories whose true parameters are known
+    Mint(Box<MintArguments>),
 }
 
 /// Arguments of `planish run`.
@@ -78,7 +82,7 @@ impl SharedOptions {
     }
 }
 
-fn thread_count(text: &str) -> Result<NonZeroUsize, String> {
+pub(super) fn thread_count(text: &str) -> Result<NonZeroUsize, String> {
     text.parse()
         .map_err(|_| "expected a whole number, 1 or more".to_owned())
 }

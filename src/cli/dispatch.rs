@@ -6,6 +6,7 @@ use std::io;
 use clap::Parser;
 
 use super::check::check;
+use super::mint::mint;
 use super::run::run;
 use super::{Arguments, Command, ExitStatus, Terminal};
 
@@ -18,6 +19,7 @@ pub fn dispatch(words: impl IntoIterator<Item = OsString>) -> ExitStatus {
         Ok(Arguments { command }) => match command {
             Command::Run(arguments) => run(&arguments, terminal),
             Command::Check(arguments) => check(&arguments, terminal),
+            Command::Mint(arguments) => mint(&arguments, terminal),
         },
         Err(usage) => {
             let printed = usage.print();

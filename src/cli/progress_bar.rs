@@ -11,7 +11,7 @@ use crate::pipeline::Progress;
 use super::terminal::{Message, tell};
 
 /// Longest silence of a long run without a terminal, and shortest time between two lines.
-const LINE_EVERY: Duration = Duration::from_secs(30);
+pub(super) const LINE_EVERY: Duration = Duration::from_secs(30);
 
 /// Frames and atoms since a run started.
 #[derive(Debug)]

@@ -17,6 +17,14 @@ pub enum FrameError {
         /// What the system or the parser said.
         reason: String,
     },
+    /// A trajectory could not be written.
+    #[error("cannot write {}: {reason}", path.display())]
+    Unwritable {
+        /// The file.
+        path: PathBuf,
+        /// What the system or the library said.
+        reason: String,
+    },
     /// A folder stands where a file was expected.
     #[error("{} is a directory, a {expected} file was expected; name a file, or a glob such as \"{}/*.xtc\"", path.display(), path.display())]
     Directory {

@@ -32,6 +32,7 @@ mod thermo_quantity;
 mod thermo_xvg;
 mod time_table;
 mod topology;
+mod trajectory_writer;
 
 pub use cell::{Cell, CellAxis, cross, dot, length};
 pub use chemfiles_reader::ChemfilesSource;
@@ -46,3 +47,4 @@ pub use run_input::{Clock, EngineUnits, RunInput};
 pub use source::{FirstFrameWork, FrameSource, ReadOptions};
 pub use thermo::ThermoSeries;
 pub use time_table::TimeTable;
+pub use trajectory_writer::TrajectoryWriter;
