@@ -238,7 +238,7 @@ fn a_folded_sheet_is_refused(#[case] since: usize) {
         folded(&crystal, frame);
         frame.time_ps = Some(10.0 * k as f64);
     }
-    let said = format!("frame {since} of ");
+    let said = format!(", frame {since}");
     refused(
         &extended_xyz(&crystal.species, &frames),
         RUN,
