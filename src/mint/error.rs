@@ -32,7 +32,7 @@ pub enum MintError {
     #[error(transparent)]
     Trajectory(#[from] FrameError),
     /// The machine failed.
-    #[error("cannot {action} {}: {source}", path.display())]
+    #[error("cannot {action} {}: {source}; check the disk, or choose another folder with --out", path.display())]
     Machine {
         /// The file or folder.
         path: PathBuf,
