@@ -160,6 +160,47 @@ fn free_and_fixed_cell_have_one_bare_plate() {
     );
 }
 
+/// A run in a fixed cell and its free twin, each on its own in two halves, have the same bare plate within two combined errors.
+#[test]
+fn fixed_cell_alone_has_the_bare_plate_of_its_free_twin() {
+    let file = PathBuf::from(env!("CARGO_MANIFEST_DIR")).join("pipelines/fixed-cell.toml");
+    let plan = Plan::load(&file).expect("the pipeline is right");
+    let options = MeasureOptions {
+        positions: plan.project.positions,
+        q_max: plan.spectrum.q_max,
+        block_frames: plan.spectrum.block_frames,
+    };
+    let [free, fixed] = [(0, 60.0), (1, 120.0)].map(|(index, middle)| {
+        let mut halves = plan.sheets[0].clone();
+        halves.runs = vec![halves.runs[index].clone(), halves.runs[index].clone()];
+        halves.runs[0].input.to = Some(middle);
+        halves.runs[1].input.from = Some(middle + 0.2);
+        let sheet = SheetEstimates {
+            name: halves.name.clone(),
+            runs: measured(&halves, &options)
+                .into_iter()
+                .map(|run| run.estimates)
+                .collect(),
+        };
+        assert_eq!(sheet.runs[0].cell_is_fixed(), index == 1);
+        JointPlateFit.fit(&sheet, &plan.fit)
+    });
+    for name in ["bending_rigidity_bare", "youngs_modulus_bare"] {
+        let value = |fitted: &Fitted| named(fitted, name).value.expect("a value");
+        let (free, fixed) = (value(&free), value(&fixed));
+        let combined = free.error.hypot(fixed.error);
+        assert!(
+            (free.value - fixed.value).abs() < 2.0 * combined,
+            "{name}: {free:?}, {fixed:?}"
+        );
+    }
+    assert!(
+        named(&fixed, "youngs_modulus_bare")
+            .note
+            .contains("Poisson's ratio, taken as")
+    );
+}
+
 /// A probability as standard normal deviate, kept finite.
 fn deviate(probability: f64) -> f64 {
     let normal = Normal::new(0.0, 1.0).expect("a normal");
