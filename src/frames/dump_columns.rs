@@ -1,5 +1,6 @@
 //! The atom table of a text dump: which columns are there, and one of its lines.
 
+use super::decimal::Words;
 use super::dump_box::DumpBox;
 
 /// The columns of interest of `ITEM: ATOMS`, by their number.
@@ -14,6 +15,17 @@ pub(super) struct DumpColumns {
     form: PositionForm,
     /// How often the atom has crossed each face of the box.
     image: Option<[usize; 3]>,
+    /// What each column is to a frame that is read for its positions.
+    roles: Vec<Role>,
+}
+
+/// What a column is to a frame that is read for its positions.
+#[derive(Clone, Copy, Debug, PartialEq)]
+enum Role {
+    Unused,
+    Id,
+    Position(usize),
+    Image(usize),
 }
 
 /// What the coordinate columns hold.
@@ -21,6 +33,13 @@ pub(super) struct DumpColumns {
 enum PositionForm {
     Cartesian,
     Scaled,
+}
+
+/// Where an atom of the table is.
+pub(super) struct AtomPlace {
+    pub id: Option<u64>,
+    /// In A, Cartesian; unwrapped where the table allows it.
+    pub position: [f64; 3],
 }
 
 /// One atom of the table.
@@ -56,9 +75,22 @@ impl DumpColumns {
                     names.join(" ")
                 )
             })?;
+        let id = column("id");
+        let role = |place: usize| {
+            let axis = |columns: [usize; 3]| columns.iter().position(|&column| column == place);
+            if let Some(axis) = axis(position) {
+                Role::Position(axis)
+            } else if id == Some(place) {
+                Role::Id
+            } else {
+                image.and_then(axis).map_or(Role::Unused, Role::Image)
+            }
+        };
+        let roles = (0..names.len()).map(role).collect();
         Ok(Self {
             count: names.len(),
-            id: column("id"),
+            roles,
+            id,
             kind: column("type"),
             element: column("element"),
             mass: column("mass"),
@@ -66,6 +98,28 @@ impl DumpColumns {
             form,
             image,
         })
+    }
+
+    /// Reads the id and position of the atom whose line starts at `text`, and returns what follows the line.
+    ///
+    /// `None` where the line holds anything unusual, or is the last of the text: [`DumpColumns::row`] then says what, or
+    /// reads it. Both give the same position, to the last bit.
+    #[inline]
+    pub fn place<'text>(&self, text: &'text [u8], bounds: &DumpBox) -> Option<(AtomPlace, &'text [u8])> {
+        let mut words = Words::new(text);
+        let mut id = None;
+        let (mut position, mut image) = ([0.0; 3], [0.0; 3]);
+        for role in &self.roles {
+            match *role {
+                Role::Unused => words.skip_word()?,
+                Role::Id => id = Some(words.whole_number()?),
+                Role::Position(axis) => position[axis] = words.number()?,
+                Role::Image(axis) => image[axis] = words.number()?,
+            }
+        }
+        words.end_line()?;
+        let position = self.cartesian(position, image, bounds);
+        Some((AtomPlace { id, position }, &text[text.len() - words.left()..]))
     }
 
     /// Reads one line of the table.
@@ -104,14 +158,22 @@ impl DumpColumns {
         if count != self.count {
             return Err(format!("{count} columns, but the header names {}", self.count));
         }
-        atom.position = match self.form {
-            PositionForm::Cartesian => atom.position.map(|component| component * bounds.length),
-            PositionForm::Scaled => bounds.unscaled(atom.position),
+        atom.position = self.cartesian(atom.position, image, bounds);
+        Ok(atom)
+    }
+
+    /// The position in A from the coordinates and image counts as written.
+    #[inline]
+    fn cartesian(&self, written: [f64; 3], image: [f64; 3], bounds: &DumpBox) -> [f64; 3] {
+        let position = match self.form {
+            PositionForm::Cartesian => written.map(|component| component * bounds.length),
+            PositionForm::Scaled => bounds.unscaled(written),
         };
         if self.image.is_some() {
-            atom.position = bounds.shifted(atom.position, image);
+            bounds.shifted(position, image)
+        } else {
+            position
         }
-        Ok(atom)
     }
 }
 

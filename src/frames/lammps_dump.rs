@@ -5,10 +5,12 @@
 
 use std::io;
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
-use super::dump_box::DumpBox;
+use super::atom_order::AtomOrder;
 use super::dump_columns::{AtomRow, DumpColumns};
-use super::dump_header::{FrameHead, HeaderError, read_header};
+use super::dump_header::{FrameHead, Header, HeaderError, read_header};
+use super::dump_table::{DumpTable, TableError};
 use super::source::FirstFrameWork;
 use super::text_file::TextFile;
 use super::time_table::TimeTable;
@@ -21,11 +23,10 @@ use super::{Clock, EngineUnits, Frame, FrameError, FrameSource, ReadNote, ReadOp
 pub struct LammpsDumpSource {
     path: PathBuf,
     text: TextFile,
-    frames: Vec<FrameHead>,
+    frames: Arc<Vec<FrameHead>>,
     clock: Clock,
     units: Option<EngineUnits>,
-    /// The ids of the first frame, ascending; empty where the dump has none.
-    ids: Vec<u64>,
+    table: DumpTable,
     notes: Vec<ReadNote>,
     line: Vec<u8>,
 }
@@ -55,7 +56,8 @@ pub(super) fn frame_of(atoms: &[DumpAtom]) -> chemfiles::Frame {
 }
 
 impl LammpsDumpSource {
-    /// Opens a dump and indexes its frames: one pass over the text, in which only headers are parsed.
+    /// Opens a dump and indexes its frames: one pass over the text, in which headers are searched for and parsed. Whether
+    /// a table has as many lines as its header says is found out when it is read, but for the last one.
     ///
     /// # Errors
     /// Where a header is malformed, the file holds no whole frame, or its units are unknown or contradict
@@ -65,14 +67,17 @@ impl LammpsDumpSource {
         let mut source = Self {
             path: path.to_owned(),
             text,
-            frames: Vec::new(),
+            frames: Arc::default(),
             clock: options.clock,
             units: options.engine_units,
-            ids: Vec::new(),
+            table: DumpTable::default(),
             notes: Vec::new(),
             line: Vec::new(),
         };
-        source.index(options.engine_units)?;
+        let mut frames = Vec::new();
+        source.index(&mut frames, options.engine_units)?;
+        frames.shrink_to_fit();
+        source.frames = Arc::new(frames);
         if source.frames.is_empty() {
             return Err(FrameError::NoFrames {
                 path: path.to_owned(),
@@ -83,9 +88,9 @@ impl LammpsDumpSource {
         Ok(source)
     }
 
-    fn index(&mut self, asked: Option<EngineUnits>) -> Result<(), FrameError> {
+    fn index(&mut self, frames: &mut Vec<FrameHead>, asked: Option<EngineUnits>) -> Result<(), FrameError> {
         loop {
-            let frame = self.frames.len();
+            let frame = frames.len();
             // Only the heads matter here, and the units may still be unknown; boxes are read again with each frame.
             let header = match read_header(&mut self.text, 1.0) {
                 Ok(header) => header,
@@ -106,8 +111,7 @@ impl LammpsDumpSource {
                 self.units = Some(self.agreed_units(name, asked)?);
             }
             let whole = self
-                .text
-                .skip_lines(header.head.atoms)
+                .skip_table(header.head.atoms)
                 .map_err(|error| unreadable(&self.path, &error))?;
             if !whole {
                 self.notes.push(ReadNote::IncompleteFrame {
@@ -116,8 +120,23 @@ impl LammpsDumpSource {
                 });
                 return Ok(());
             }
-            self.frames.push(header.head);
+            frames.push(header.head);
         }
+    }
+
+    /// Goes to the frame after a table, by searching for it; the lines of the last table are counted. Returns whether they
+    /// are all there.
+    fn skip_table(&mut self, atoms: usize) -> io::Result<bool> {
+        // Going back is dear in a compressed text, and unpacking it takes longer than to count its lines.
+        if !self.text.is_plain() {
+            return self.text.skip_lines(atoms);
+        }
+        let table = self.text.position();
+        if self.text.find_line(b"ITEM:")? {
+            return Ok(true);
+        }
+        self.text.seek(table)?;
+        self.text.skip_lines(atoms)
     }
 
     fn agreed_units(&self, name: &str, asked: Option<EngineUnits>) -> Result<EngineUnits, FrameError> {
@@ -149,25 +168,19 @@ impl LammpsDumpSource {
             }
             Ok(())
         })?;
-        ids.sort_unstable();
-        if let Some(&[id, _]) = ids.array_windows().find(|[one, other]| one == other) {
-            return Err(self.bad_frame(0, format!("two atoms have the id {id}")));
-        }
-        if ids.is_empty() {
+        let order =
+            AtomOrder::new(ids).map_err(|id| self.bad_frame(0, format!("two atoms have the id {id}")))?;
+        if order.is_of_file() {
             self.notes.push(ReadNote::OrderAssumed {
                 path: self.path.clone(),
             });
         }
-        self.ids = ids;
+        self.table = DumpTable::new(order);
         Ok(())
     }
 
-    /// Calls `take` with the box and each atom of a frame, in the order of the file.
-    fn for_each_atom(
-        &mut self,
-        frame: usize,
-        mut take: impl FnMut(usize, AtomRow<'_>) -> Result<(), String>,
-    ) -> Result<DumpBox, FrameError> {
+    /// Reads the head of a frame, so that its first atom comes next.
+    fn go_to_table(&mut self, frame: usize) -> Result<(Header, DumpColumns), FrameError> {
         let start = self.frames[frame].start;
         self.text
             .seek(start)
@@ -179,6 +192,16 @@ impl LammpsDumpSource {
             HeaderError::Content(reason) => self.bad_frame(frame, reason),
         })?;
         let columns = DumpColumns::parse(&header.columns).map_err(|reason| self.bad_frame(frame, reason))?;
+        Ok((header, columns))
+    }
+
+    /// Calls `take` with each atom of a frame, in the order of the file.
+    fn for_each_atom(
+        &mut self,
+        frame: usize,
+        mut take: impl FnMut(usize, AtomRow<'_>) -> Result<(), String>,
+    ) -> Result<(), FrameError> {
+        let (header, columns) = self.go_to_table(frame)?;
         for row in 0..header.head.atoms {
             let whole = self
                 .text
@@ -193,7 +216,30 @@ impl LammpsDumpSource {
             };
             parsed.map_err(|reason| self.bad_frame(frame, format!("atom line {}: {reason}", row + 1)))?;
         }
-        Ok(header.bounds)
+        Ok(())
+    }
+
+    /// Refuses lines between the table just read and the next frame, other than blank ones.
+    fn check_end_of_table(&mut self, frame: usize) -> Result<(), FrameError> {
+        let Some(next) = self.frames.get(frame + 1).map(|next| next.start) else {
+            return Ok(());
+        };
+        while self.text.position() < next {
+            let whole = self
+                .text
+                .read_line(&mut self.line)
+                .map_err(|error| unreadable(&self.path, &error))?;
+            if !whole || !self.line.trim_ascii().is_empty() {
+                let line = String::from_utf8_lossy(&self.line);
+                let reason = format!(
+                    "found \"{}\" after the {} atoms of the frame, where \"ITEM: TIMESTEP\" was expected",
+                    line.trim(),
+                    self.frames[frame].atoms
+                );
+                return Err(self.bad_frame(frame, reason));
+            }
+        }
+        Ok(())
     }
 
     /// The atoms of the first frame, in ascending order of their ids.
@@ -255,34 +301,37 @@ impl FrameSource for LammpsDumpSource {
                 expected,
             });
         }
-        let ids = std::mem::take(&mut self.ids);
+        let (header, columns) = self.go_to_table(index)?;
         frame.positions.clear();
-        // As many atoms as places, and no id comes twice: in the end every place is filled.
-        let mut filled = vec![false; if ids.is_empty() { 0 } else { atoms }];
         frame.positions.resize(atoms, [0.0; 3]);
-        let positions = &mut frame.positions;
-        let outcome = self.for_each_atom(index, |row, atom| {
-            let Some(id) = atom.id else {
-                positions[row] = atom.position;
-                return if ids.is_empty() {
-                    Ok(())
-                } else {
-                    Err("the atom has no id".to_owned())
-                };
-            };
-            let place = ids
-                .binary_search(&id)
-                .map_err(|_| format!("the atom with id {id} is not in the first frame of the file"))?;
-            if std::mem::replace(&mut filled[place], true) {
-                return Err(format!("two atoms have the id {id}"));
-            }
-            positions[place] = atom.position;
-            Ok(())
-        });
-        self.ids = ids;
-        frame.cell = outcome?.cell();
+        self.table
+            .read(&mut self.text, &columns, &header.bounds, &mut frame.positions)
+            .map_err(|error| match error {
+                TableError::Io(error) => unreadable(&self.path, &error),
+                TableError::Row(row, reason) => {
+                    self.bad_frame(index, format!("atom line {}: {reason}", row + 1))
+                }
+            })?;
+        self.check_end_of_table(index)?;
+        frame.cell = header.bounds.cell();
         frame.time_ps = self.time(index);
         Ok(())
+    }
+
+    fn another(&self) -> Result<Option<Box<dyn FrameSource>>, FrameError> {
+        if !self.text.is_plain() {
+            return Ok(None);
+        }
+        Ok(Some(Box::new(Self {
+            path: self.path.clone(),
+            text: TextFile::open(&self.path).map_err(|error| unreadable(&self.path, &error))?,
+            frames: Arc::clone(&self.frames),
+            clock: self.clock,
+            units: self.units,
+            table: self.table.for_another_thread(),
+            notes: Vec::new(),
+            line: Vec::new(),
+        })))
     }
 
     fn with_first_frame(&mut self, work: FirstFrameWork) -> Result<SheetAtoms, FrameError> {

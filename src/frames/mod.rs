@@ -5,13 +5,16 @@
 //! [`RunFrames`] is the whole of it for a run's trajectory: it opens the files through [`open`], which gives each
 //! to the reader of its format (a [`FrameSource`]), joins them in time and hands out checked frames.
 
+mod atom_order;
 mod cell;
 mod cell_check;
 mod chemfiles_reader;
 mod chemfiles_thread;
+mod decimal;
 mod dump_box;
 mod dump_columns;
 mod dump_header;
+mod dump_table;
 mod engine_units;
 mod error;
 mod frame;

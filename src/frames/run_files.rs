@@ -2,6 +2,7 @@
 
 use std::cmp::Ordering;
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
 use super::reader;
 use super::time_table::TimeTable;
@@ -12,7 +13,7 @@ const OPEN_FILES: usize = 32;
 
 /// The trajectory files of a run, in time order.
 pub(super) struct RunFiles {
-    files: Vec<RunFile>,
+    files: Arc<Vec<RunFile>>,
     clock: Clock,
     options: ReadOptions,
     /// The files that are open, the one opened last standing last.
@@ -41,8 +42,9 @@ impl RunFiles {
             clock: source_clock,
             engine_units: input.engine_units,
         };
+        let mut run_files = Vec::new();
         let mut run = Self {
-            files: Vec::new(),
+            files: Arc::default(),
             clock: input.clock,
             options,
             open: Vec::new(),
@@ -68,7 +70,7 @@ impl RunFiles {
             let timed = files.iter().all(|(file, _)| file.times.time(0).is_some());
             files.sort_by(|(one, _), (other, _)| in_time_order(timed, one, other));
             for (file, source) in files {
-                run.files.push(file);
+                run_files.push(file);
                 sources.push(source);
             }
         }
@@ -76,15 +78,34 @@ impl RunFiles {
         run.open = opened
             .filter_map(|(file, source)| Some((file, source?)))
             .collect();
-        if run.files.is_empty() {
+        if run_files.is_empty() {
             return Err(FrameError::NoFiles);
         }
         let mut before = 0;
-        for file in &mut run.files {
+        for file in &mut run_files {
             file.frames_before = before;
             before += file.frames;
         }
+        run.files = Arc::new(run_files);
         Ok(run)
+    }
+
+    /// The same files for another thread; `None` where one of those that are open is best read by one reader in order.
+    pub fn another(&self) -> Result<Option<Self>, FrameError> {
+        let mut open = Vec::with_capacity(self.open.len());
+        for (file, source) in &self.open {
+            match source.another()? {
+                Some(source) => open.push((*file, source)),
+                None => return Ok(None),
+            }
+        }
+        Ok(Some(Self {
+            files: Arc::clone(&self.files),
+            clock: self.clock,
+            options: self.options,
+            open,
+            notes: Vec::new(),
+        }))
     }
 
     /// How many files there are; at least one.

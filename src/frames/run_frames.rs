@@ -1,5 +1,7 @@
 //! The frames of a run: its files joined in time, cut to the wanted part, reduced to the sheet's atoms, and checked.
 
+use std::sync::Arc;
+
 use super::cell_check::check_cell;
 use super::frame_place::FramePlace;
 use super::run_files::RunFiles;
@@ -13,9 +15,9 @@ use super::{Cell, Clock, Frame, FrameError, ReadNote, RunInput, SheetAtoms};
 pub struct RunFrames {
     files: RunFiles,
     input: RunInput,
-    atoms: SheetAtoms,
+    atoms: Arc<SheetAtoms>,
     atoms_in_file: usize,
-    kept: Vec<KeptFrame>,
+    kept: Arc<Vec<KeptFrame>>,
     interval_ps: Option<f64>,
     notes: Vec<ReadNote>,
     /// A whole frame of a file, before the selection.
@@ -62,9 +64,9 @@ impl RunFrames {
         let mut run = Self {
             files,
             input: input.clone(),
-            atoms,
+            atoms: Arc::new(atoms),
             atoms_in_file,
-            kept: Vec::new(),
+            kept: Arc::default(),
             interval_ps: None,
             notes,
             whole,
@@ -87,6 +89,7 @@ impl RunFrames {
         // The latest time so far, and the file it stands in.
         let mut last: Option<(f64, usize)> = None;
         let mut wanted = 0usize;
+        let mut kept = Vec::new();
         for file in 0..self.files.len() {
             let mut dropped: Option<(usize, f64, f64)> = None;
             for frame in 0..self.files.frames(file) {
@@ -110,7 +113,7 @@ impl RunFrames {
                     continue;
                 }
                 if wanted.is_multiple_of(input.stride.max(1)) {
-                    self.kept.push(KeptFrame {
+                    kept.push(KeptFrame {
                         file: file as u32,
                         frame: frame as u32,
                     });
@@ -127,7 +130,7 @@ impl RunFrames {
                 });
             }
         }
-        if self.kept.is_empty() {
+        if kept.is_empty() {
             let last_file = self.files.len() - 1;
             return Err(FrameError::NoFramesLeft {
                 path: self.files.path(0).to_owned(),
@@ -139,8 +142,27 @@ impl RunFrames {
                     .unwrap_or(0.0),
             });
         }
-        self.kept.shrink_to_fit();
+        kept.shrink_to_fit();
+        self.kept = Arc::new(kept);
         Ok(())
+    }
+
+    /// The same frames for another thread, which then reads any of them on its own; `None` where a file is best read by
+    /// one reader in order. It brings no notes.
+    ///
+    /// # Errors
+    /// Where a file cannot be opened again.
+    pub fn another(&self) -> Result<Option<Self>, FrameError> {
+        Ok(self.files.another()?.map(|files| Self {
+            files,
+            input: self.input.clone(),
+            atoms: Arc::clone(&self.atoms),
+            atoms_in_file: self.atoms_in_file,
+            kept: Arc::clone(&self.kept),
+            interval_ps: self.interval_ps,
+            notes: Vec::new(),
+            whole: Frame::empty(),
+        }))
     }
 
     /// Finds the spacing of the kept frames, its median where it is uneven.

@@ -42,6 +42,15 @@ pub trait FrameSource: Send {
     /// Where the frame cannot be parsed, or has no cell.
     fn read(&mut self, index: usize, frame: &mut Frame) -> Result<(), FrameError>;
 
+    /// Another reader of the same file, for another thread: it shares what was found out when the file was opened, and gives
+    /// the same frames. `None` where the file is best read by one reader in order.
+    ///
+    /// # Errors
+    /// Where the file cannot be opened again.
+    fn another(&self) -> Result<Option<Box<dyn FrameSource>>, FrameError> {
+        Ok(None)
+    }
+
     /// Runs `work` on the first frame with all that the file says of its atoms.
     ///
     /// # Errors

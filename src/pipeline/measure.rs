@@ -1,15 +1,18 @@
 //! Measuring one run: read its frames once, project and measure them block by block, on as many threads as there are.
+//! Where a file can be read by many threads each reads its own blocks; else one reads for all.
 
 use std::sync::Mutex;
+use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
 use std::sync::mpsc::{Receiver, SyncSender, sync_channel};
 
 use serde::{Deserialize, Serialize};
 
+use super::measured_block::{BlockInProgress, BlockScratch, Fault, Outcome, measure_block};
 use super::plan::Plan;
 use super::progress::Progress;
 use super::run_error::RunProblem;
 use crate::frames::{Frame, RunFrames, RunInput, SheetAtoms};
-use crate::measurements::{BlockRecord, History, OpenBlock};
+use crate::measurements::History;
 use crate::sheet::{Positions, Projection, ProjectionScratch, reference_frame_indices};
 
 /// What decides how a run is measured, besides its files.
@@ -86,13 +89,6 @@ struct Batch {
     frames: Vec<Frame>,
 }
 
-/// What became of a block.
-struct Outcome {
-    record: BlockRecord,
-    /// Frame (counted among the kept ones) and atom of the first hop in the block.
-    first_hop: Option<(usize, usize)>,
-}
-
 /// Measures a run on `threads` threads. Blocks are fixed runs of frames and each is measured on its own, so the records
 /// do not depend on the number of threads.
 ///
@@ -110,13 +106,9 @@ pub fn measure_run(
     let projection = project_reference(&mut frames, &atoms, input, options)?;
     progress.run_started(label.sheet, label.run, frames.len());
     let outcomes = if threads <= 1 {
-        measure_in_line(
-            &mut frames,
-            &projection,
-            options.block_frames,
-            atoms.indices.len(),
-            progress,
-        )?
+        measure_in_line(&mut frames, &projection, options.block_frames, progress)?
+    } else if let Some(readers) = readers_for(&frames, options.block_frames, threads)? {
+        measure_with_readers(readers, &projection, options.block_frames, progress)?
     } else {
         measure_in_parallel(&mut frames, &projection, options.block_frames, threads, progress)?
     };
@@ -178,30 +170,89 @@ pub(super) fn project_reference(
     })
 }
 
+/// A reader for each worker; `None` where a file is best read by one reader in order.
+fn readers_for(
+    frames: &RunFrames,
+    block_frames: usize,
+    threads: usize,
+) -> Result<Option<Vec<RunFrames>>, RunProblem> {
+    let workers = threads.min(frames.len().div_ceil(block_frames)).max(1);
+    let mut readers = Vec::with_capacity(workers);
+    for _ in 0..workers {
+        match frames.another()? {
+            Some(reader) => readers.push(reader),
+            None => return Ok(None),
+        }
+    }
+    Ok(Some(readers))
+}
+
 /// Reads, projects and measures in turn on the calling thread.
 fn measure_in_line(
     frames: &mut RunFrames,
     projection: &Projection,
     block_frames: usize,
-    atoms: usize,
     progress: &dyn Progress,
 ) -> Result<Vec<Outcome>, RunProblem> {
-    let mut scratch = ProjectionScratch::default();
+    let mut scratch = BlockScratch::default();
     let mut outcomes = Vec::new();
-    let mut frame = Frame::empty();
-    for first in (0..frames.len()).step_by(block_frames) {
-        let last = (first + block_frames).min(frames.len());
-        let mut block = BlockInProgress::new(projection);
-        for index in first..last {
-            frames.read(index, &mut frame)?;
-            block
-                .observe(index, &frame, &mut scratch)
-                .map_err(|fault| fault.at(frames))?;
-            progress.frames_done(1, atoms);
-        }
-        outcomes.push(block.close());
+    for index in 0..frames.len().div_ceil(block_frames) {
+        let outcome = measure_block(frames, projection, block_frames, index, &mut scratch, progress)?;
+        outcomes.push(outcome);
     }
     Ok(outcomes)
+}
+
+/// Every worker reads, projects and measures whole blocks with a reader of its own, taking them in order; results are put
+/// in order of the blocks.
+///
+/// Where frames are at fault, the first is named: the blocks before its own were taken before it, and are finished.
+fn measure_with_readers(
+    readers: Vec<RunFrames>,
+    projection: &Projection,
+    block_frames: usize,
+    progress: &dyn Progress,
+) -> Result<Vec<Outcome>, RunProblem> {
+    let blocks = readers
+        .first()
+        .map_or(0, |frames| frames.len().div_ceil(block_frames));
+    let next = AtomicUsize::new(0);
+    let stop = AtomicBool::new(false);
+    let results: Mutex<Vec<Option<Result<Outcome, RunProblem>>>> =
+        Mutex::new(std::iter::repeat_with(|| None).take(blocks).collect());
+    std::thread::scope(|scope| {
+        for mut frames in readers {
+            let (next, stop, results) = (&next, &stop, &results);
+            scope.spawn(move || {
+                let mut scratch = BlockScratch::default();
+                while !stop.load(Ordering::Relaxed) {
+                    let index = next.fetch_add(1, Ordering::Relaxed);
+                    if index >= blocks {
+                        break;
+                    }
+                    let outcome = measure_block(
+                        &mut frames,
+                        projection,
+                        block_frames,
+                        index,
+                        &mut scratch,
+                        progress,
+                    );
+                    if outcome.is_err() {
+                        stop.store(true, Ordering::Relaxed);
+                    }
+                    if let Ok(mut results) = results.lock() {
+                        results[index] = Some(outcome);
+                    }
+                }
+            });
+        }
+    });
+    let results = results
+        .into_inner()
+        .unwrap_or_else(std::sync::PoisonError::into_inner);
+    // Blocks without a result come after one at fault, at which collecting ends.
+    results.into_iter().flatten().collect()
 }
 
 /// Reads on the calling thread while workers project and measure whole blocks; results are put in order of the blocks.
@@ -316,61 +367,5 @@ fn work(
         }
         // Full or closed: the frames are simply freed.
         let _ = spent.try_send(frames);
-    }
-}
-
-/// A frame that cannot be projected.
-struct Fault {
-    frame: usize,
-    problem: crate::sheet::SheetError,
-}
-
-impl Fault {
-    fn at(self, frames: &RunFrames) -> RunProblem {
-        RunProblem::Sheet {
-            place: frames.place(self.frame).to_string(),
-            problem: self.problem,
-        }
-    }
-}
-
-/// A block being measured.
-struct BlockInProgress<'a> {
-    projection: &'a Projection,
-    open: OpenBlock,
-    first_hop: Option<(usize, usize)>,
-}
-
-impl<'a> BlockInProgress<'a> {
-    fn new(projection: &'a Projection) -> Self {
-        Self {
-            projection,
-            open: OpenBlock::new(projection.modes()),
-            first_hop: None,
-        }
-    }
-
-    fn observe(
-        &mut self,
-        number: usize,
-        frame: &Frame,
-        scratch: &mut ProjectionScratch,
-    ) -> Result<(), Fault> {
-        let surface = self.projection.surface(frame, scratch).map_err(|problem| Fault {
-            frame: number,
-            problem,
-        })?;
-        if let (None, Some(atom)) = (self.first_hop, surface.hopped) {
-            self.first_hop = Some((number, atom));
-        }
-        self.open.observe(&surface);
-        Ok(())
-    }
-
-    fn close(self) -> Outcome {
-        Outcome {
-            record: self.open.close(),
-            first_hop: self.first_hop,
-        }
     }
 }

@@ -12,6 +12,7 @@ mod held_tension;
 mod inputs;
 pub mod keys;
 mod measure;
+mod measured_block;
 mod plan;
 mod progress;
 mod replicas;

@@ -4,6 +4,7 @@
 //! lattice is known in scaled coordinates, so a cell and positions that do not belong together cannot pass.
 
 mod atoms;
+mod dumps;
 mod files;
 mod formats;
 mod joining;
