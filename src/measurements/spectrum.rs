@@ -10,8 +10,10 @@ use crate::sheet::{LONG_WAVES, Surface};
 pub struct Spectrum {
     /// Number of modes of the run.
     modes: usize,
-    /// Modes of each frame of the block: lagged products need them all until it closes.
-    frames: Vec<Vec<Complex64>>,
+    /// Modes of the frames of the block, one frame after the other: lagged products need them all until it closes.
+    modes_of_frames: Vec<Complex64>,
+    /// Number of frames seen.
+    count: usize,
 }
 
 impl Spectrum {
@@ -19,20 +21,25 @@ impl Spectrum {
     pub fn new(modes: usize) -> Self {
         Self {
             modes,
-            frames: Vec::new(),
+            modes_of_frames: Vec::new(),
+            count: 0,
         }
     }
 }
 
 impl Measurement for Spectrum {
     fn observe(&mut self, surface: &Surface) {
-        self.frames.push(surface.modes.clone());
+        self.modes_of_frames.extend_from_slice(&surface.modes);
+        self.count += 1;
     }
 
     fn close(self: Box<Self>) -> Measured {
         let long = self.modes.min(LONG_WAVES);
-        let mut values = Array2::zeros((self.frames.len(), 2 * long));
-        for (mut row, frame) in values.rows_mut().into_iter().zip(&self.frames) {
+        let frames: Vec<&[Complex64]> = (0..self.count)
+            .map(|frame| &self.modes_of_frames[frame * self.modes..][..self.modes])
+            .collect();
+        let mut values = Array2::zeros((frames.len(), 2 * long));
+        for (mut row, frame) in values.rows_mut().into_iter().zip(&frames) {
             for (k, h) in frame[..long].iter().enumerate() {
                 row[2 * k] = h.re;
                 row[2 * k + 1] = h.im;
@@ -43,13 +50,13 @@ impl Measurement for Spectrum {
             .collect();
         Measured {
             series: Some(Series { columns, values }),
-            sums: Some(sum_modes(&self.frames, long, self.modes)),
+            sums: Some(sum_modes(&frames, long, self.modes)),
         }
     }
 }
 
 /// Sums over the frames of a block for the modes `from..to`, in frame order.
-fn sum_modes(frames: &[Vec<Complex64>], from: usize, to: usize) -> ModeSums {
+fn sum_modes(frames: &[&[Complex64]], from: usize, to: usize) -> ModeSums {
     let mut sums = ModeSums::zero(to - from);
     for (t, frame) in frames.iter().enumerate() {
         let now = &frame[from..to];

@@ -182,6 +182,39 @@ impl NonuniformFft {
     }
 
     fn spread_onto_grid(&self, strengths: &[f64], grid: &mut [f64]) {
+        // With the width known, the compiler unrolls the innermost loop and keeps the weights in registers. Widths up to
+        // 16 are all that a kernel can have.
+        match self.kernel.width {
+            8 => self.spread_with_width::<8>(strengths, grid),
+            10 => self.spread_with_width::<10>(strengths, grid),
+            12 => self.spread_with_width::<12>(strengths, grid),
+            14 => self.spread_with_width::<14>(strengths, grid),
+            16 => self.spread_with_width::<16>(strengths, grid),
+            _ => self.spread_with_any_width(strengths, grid),
+        }
+    }
+
+    /// [`NonuniformFft::spread_with_any_width`] for `WIDTH`: the same sums in the same order.
+    fn spread_with_width<const WIDTH: usize>(&self, strengths: &[f64], grid: &mut [f64]) {
+        let stride = self.axes[1].grid + WIDTH;
+        grid.fill(0.0);
+        let (weights, _) = self.weights.as_chunks::<WIDTH>();
+        for (s, weights) in self.spread.iter().zip(weights.chunks_exact(2)) {
+            let [along1, along2] = [weights[0], weights[1]];
+            let strength = strengths[s.point];
+            let block = &mut grid[s.start[0] * stride..][..WIDTH * stride];
+            for (row, weight1) in block.chunks_exact_mut(stride).zip(along1) {
+                let scaled = strength * weight1;
+                if let Some(cells) = row[s.start[1]..].first_chunk_mut::<WIDTH>() {
+                    for (cell, weight2) in cells.iter_mut().zip(along2) {
+                        *cell += scaled * weight2;
+                    }
+                }
+            }
+        }
+    }
+
+    fn spread_with_any_width(&self, strengths: &[f64], grid: &mut [f64]) {
         let width = self.kernel.width;
         let stride = self.axes[1].grid + width;
         grid.fill(0.0);

@@ -8,9 +8,15 @@ use crate::numerics::{DirectSum, NonuniformFft, Scratch, modes_of_moving_points}
 /// Largest error of a mode of the fast transform, relative to the sum of |h| over the atoms.
 pub const TOLERANCE: f64 = 1e-10;
 
-/// Above this many phases (modes times atoms, 16 bytes each) the exact sum would not stay in a processor's cache, and is
-/// never chosen.
-const MOST_PHASES: usize = 1 << 20;
+/// Up to this many phases (modes times atoms) the exact sum over fixed sites is the cheaper way. It costs a multiplication
+/// and an addition for each phase and component, as long as the planned phases (16 bytes each) stay in the cache; the fast
+/// transform costs the square of its kernel's width for each atom, and the transform of its grid. Measured with
+/// `benches/nonuniform_fft.rs`.
+const MOST_FIXED_PHASES: usize = 1 << 17;
+
+/// The same where sites move with the frame: phases are then multiplied together each time, and the fast transform
+/// computes its weights again.
+const MOST_MOVING_PHASES: usize = 1 << 16;
 
 /// How h_q = (1/N) sum_j h_j exp(-i q.R_j) is computed for the modes of a run.
 #[derive(Clone, Debug)]
@@ -42,7 +48,12 @@ impl ModeTransform {
                 .max()
                 .unwrap_or(0)
         });
-        match (moving, phases <= MOST_PHASES) {
+        let most = if moving {
+            MOST_MOVING_PHASES
+        } else {
+            MOST_FIXED_PHASES
+        };
+        match (moving, phases <= most) {
             (false, true) => Self::Direct(DirectSum::plan(sites, &modes.integers)),
             (false, false) => Self::Fast(Box::new(NonuniformFft::plan(sites, highest, TOLERANCE))),
             (true, true) => Self::MovingDirect,

@@ -36,6 +36,8 @@ pub struct Projection {
     transform: ModeTransform,
     positions: Positions,
     in_plane: Vec<[f64; 2]>,
+    /// The same, wrapped into the cell.
+    wrapped: Vec<[f64; 2]>,
 }
 
 /// Working memory of one thread.
@@ -85,6 +87,7 @@ impl Projection {
             modes,
             transform,
             positions,
+            wrapped: in_plane.iter().map(|s| s.map(|x| x - x.floor())).collect(),
             in_plane,
         })
     }
@@ -145,7 +148,7 @@ impl Projection {
                 .map(|(d, site)| d[2] + site[2]),
         );
         let [aa, ab, bb] = plane.metric;
-        let slope = mean_slope(PlaneCell::from_metric(aa, ab, bb), &self.in_plane, heights);
+        let slope = mean_slope(PlaneCell::from_metric(aa, ab, bb), &self.wrapped, heights);
         self.planes.remove_means(heights);
 
         scratch.sites.clear();
@@ -188,18 +191,16 @@ fn stand_in_lattice(reference: &ReferenceSites, planes: &Planes) -> [[f64; 2]; 2
     [[a, 0.0], [a / 2.0, a * 3.0_f64.sqrt() / 2.0]]
 }
 
-/// Slope along axes 1 and 2 of the least-squares plane through heights over sites (scaled, any image).
+/// Slope along axes 1 and 2 of the least-squares plane through heights over sites (scaled, all in one cell).
 fn mean_slope(cell: PlaneCell, sites: &[[f64; 2]], heights: &[f64]) -> [f64; 2] {
     let count = sites.len() as f64;
-    let point = |s: &[f64; 2]| {
-        let (s1, s2) = (s[0] - s[0].floor(), s[1] - s[1].floor());
-        [s1 * cell.a[0] + s2 * cell.b[0], s1 * cell.a[1] + s2 * cell.b[1]]
-    };
+    let point = |&[s1, s2]: &[f64; 2]| [s1 * cell.a[0] + s2 * cell.b[0], s1 * cell.a[1] + s2 * cell.b[1]];
     let mut mean = [0.0; 3];
     for (site, &h) in sites.iter().zip(heights) {
         let [x, y] = point(site);
-        mean = [mean[0] + x / count, mean[1] + y / count, mean[2] + h / count];
+        mean = [mean[0] + x, mean[1] + y, mean[2] + h];
     }
+    let mean = mean.map(|sum| sum / count);
     let (mut xx, mut xy, mut yy, mut xh, mut yh) = (0.0, 0.0, 0.0, 0.0, 0.0);
     for (site, &h) in sites.iter().zip(heights) {
         let [x, y] = point(site);

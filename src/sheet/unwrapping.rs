@@ -80,14 +80,20 @@ fn wrap(d: &mut [f64; 3], base: [f64; 3], lid: [f64; 3]) {
     for (x, b) in d.iter_mut().zip(base) {
         *x -= b;
     }
-    let crossings = (d[2] / lid[2]).round();
+    let crossings = whole(d[2] / lid[2]);
     if crossings != 0.0 {
         for (x, l) in d.iter_mut().zip(lid) {
             *x -= crossings * l;
         }
     }
-    d[0] -= d[0].round();
-    d[1] -= d[1].round();
+    d[0] -= whole(d[0]);
+    d[1] -= whole(d[1]);
+}
+
+/// The nearest whole number. Nearly always it is zero, and rounding is a call into the mathematics library.
+#[inline]
+fn whole(x: f64) -> f64 {
+    if x.abs() < 0.5 { 0.0 } else { x.round() }
 }
 
 /// Mean of numbers on a circle of circumference 1, in (-1/2, 1/2].
