@@ -73,7 +73,7 @@ impl HybridMonteCarlo {
         let expected = if hold == CellHold::Free {
             theory.solve(&state)?
         } else {
-            theory.solve_clamped(modes, &state, poisson)?
+            theory.solve_clamped(&state, [true; 3], poisson, None)?
         };
         let held = held_strain(&state, poisson);
         let condition = match hold {

@@ -34,7 +34,7 @@ impl PlateBox {
         for _ in 0..ROUNDS {
             let theory = BoxScsa::new(&modes);
             let solution = if request.fixed_cell {
-                theory.solve_clamped(&modes, &state, request.poisson)?
+                theory.solve_clamped(&state, [true; 3], request.poisson, None)?
             } else {
                 theory.solve(&state)?
             };
