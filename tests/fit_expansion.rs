@@ -196,7 +196,7 @@ fn area_and_density() {
         runs: vec![one],
     };
     let options = FitOptions {
-        plate: PlateModel::Harmonic,
+        plate: PlateModel::Rippled,
         window: None,
         wanted_error: 0.05,
     };

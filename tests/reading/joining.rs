@@ -113,7 +113,11 @@ fn uneven_times_are_all_read_and_noted() {
     let note = run.notes().iter().find(uneven).expect("noted");
     says(
         &note.to_string(),
-        &["from 1 ps to 2 ps (before frame 7 of", "1 ps is used"],
+        &[
+            "from 1 ps to 2 ps (before ",
+            ", frame 7 (t = 7 ps)",
+            "1 ps is used",
+        ],
     );
 }
 
