@@ -5,7 +5,7 @@ use rayon::prelude::*;
 use super::cell_likelihood::CellSample;
 use super::joint_covariance::joint_covariance;
 use super::joint_likelihood::JointModel;
-use super::joint_quality::{describe, judge};
+use super::joint_quality::{METHOD, describe, judge};
 use super::joint_quantities::{NAMES, quantities};
 use super::joint_run::JointRun;
 use super::mode_verdict::Judgement;
@@ -27,9 +27,6 @@ const LEAST_SPREAD: f64 = 2.0;
 
 /// Poisson's ratio where no cell tells it, in the middle of known sheets' 0.15 to 0.35: it then acts through clamped strains only.
 const HELD_POISSON: f64 = 0.25;
-
-/// What a joint fit is called in a quantity's method.
-pub(super) const METHOD: &str = "heights and cell fluctuations, joint box-scsa";
 
 impl Fit for JointPlateFit {
     fn name(&self) -> &'static str {

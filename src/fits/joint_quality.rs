@@ -5,11 +5,13 @@ use statrs::distribution::{ChiSquared, ContinuousCDF};
 
 use super::Verdict;
 use super::joint_likelihood::{JointFit, JointModel};
-use super::joint_plate::METHOD;
 use super::lack_of_fit;
 use super::mode_verdict::Judgement;
 use super::plate_likelihood::{LikelihoodFit, ModelPoint};
 use crate::estimates::Tension;
+
+/// What a joint fit is called in a quantity's method.
+pub(super) const METHOD: &str = "heights and cell fluctuations, joint box-scsa";
 
 /// A lack of fit less probable than this, over all runs or cells together, makes the values weak.
 const ACCEPTED_PROBABILITY: f64 = 0.01;

@@ -5,7 +5,7 @@ use std::path::Path;
 use super::held_tension::{HeldTension, settle};
 use super::measure::MeasuredRun;
 use super::plan::{RunPlan, SheetPlan};
-use super::run_error::RunProblem;
+use super::run_problem::RunProblem;
 use super::stored_run::RunRecords;
 use crate::estimates::{RunEstimates, RunFacts, SheetEstimates, Tension, pool};
 

@@ -10,7 +10,7 @@ use serde::{Deserialize, Serialize};
 use super::measured_block::{BlockInProgress, BlockScratch, Fault, Outcome, measure_block};
 use super::plan::Plan;
 use super::progress::Progress;
-use super::run_error::RunProblem;
+use super::run_problem::RunProblem;
 use crate::frames::{Frame, RunFrames, RunInput, SheetAtoms};
 use crate::measurements::History;
 use crate::sheet::{Positions, Projection, ProjectionScratch, reference_frame_indices};

@@ -1,7 +1,7 @@
 //! One block of frames on its way from the reader to its record.
 
 use super::progress::Progress;
-use super::run_error::RunProblem;
+use super::run_problem::RunProblem;
 use crate::frames::{Frame, RunFrames};
 use crate::measurements::{BlockRecord, OpenBlock};
 use crate::sheet::{Projection, ProjectionScratch, SheetError};

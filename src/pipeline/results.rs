@@ -4,8 +4,9 @@ use std::path::Path;
 
 use super::canonical::relative_to;
 use super::fingerprint::fingerprint;
+use super::job::{FinishedSheet, RunOutcome};
 use super::plan::Plan;
-use super::run::{FinishedSheet, RunOutcome};
+
 use super::run_error::RunError;
 use crate::estimates::SheetEstimates;
 use crate::parameters::{InputHash, ParameterFile, Provenance, RunFrames};

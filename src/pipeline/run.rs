@@ -1,9 +1,8 @@
 //! THE pipeline: read, project, measure, estimate, fit, write; read it from top to bottom.
 
-use std::path::PathBuf;
-
 use super::estimate::{RunAccount, RunFault, estimate_sheet};
 use super::gate_check::gate_missed;
+use super::job::{FinishedSheet, RunOptions, RunOutcome};
 use super::plan::{Plan, SheetPlan};
 use super::progress::Progress;
 use super::results::{provenance, write_results};
@@ -14,41 +13,7 @@ use super::stored_run::stored_or_measured;
 use crate::estimates::SheetEstimates;
 use crate::fits::{FitOptions, Fitted, registry};
 use crate::parameters::{ParameterFile, Sheet};
-use crate::report::{OutputFolder, RunSummary};
-
-/// How the job is carried out; nothing here touches a result.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct RunOptions {
-    /// The output folder.
-    pub out: PathBuf,
-    /// Number of threads, at least 1.
-    pub threads: usize,
-}
-
-/// What a finished job leaves to say.
-#[derive(Clone, Debug, Default, PartialEq)]
-pub struct RunOutcome {
-    /// The parameters of each sheet.
-    pub sheets: Vec<Sheet>,
-    /// Runs that were refused for their input, each with its error.
-    pub refused: Vec<String>,
-    /// Gates of the pipeline that were not met, each with what was found.
-    pub gate_missed: Vec<String>,
-}
-
-/// One sheet at the end of the pipeline.
-pub(super) struct FinishedSheet {
-    /// Estimates of its runs, replicas pooled.
-    pub estimates: SheetEstimates,
-    /// What each fit made of them.
-    pub fits: Vec<Fitted>,
-    /// What became of each run of the plan.
-    pub accounts: Vec<RunAccount>,
-    /// Its part of the parameter file.
-    pub parameters: Sheet,
-    /// Its rows of runs.csv.
-    pub summaries: Vec<RunSummary>,
-}
+use crate::report::OutputFolder;
 
 /// Carries out a plan and writes the output folder.
 ///

@@ -2,8 +2,8 @@
 
 use std::time::Instant;
 
+use super::job::RunOptions;
 use super::plan::Plan;
-use super::run::RunOptions;
 
 /// The log of one job.
 pub struct RunLog {

@@ -7,7 +7,8 @@ use super::fingerprint::fingerprint;
 use super::measure::{MeasureOptions, MeasuredRun, RunLabel, measure_run};
 use super::plan::{Plan, RunPlan, SheetPlan};
 use super::progress::Progress;
-use super::run_error::{RunError, RunProblem};
+use super::run_error::RunError;
+use super::run_problem::RunProblem;
 use crate::frames::FrameError;
 use crate::report::{OutputFolder, file_stem};
 

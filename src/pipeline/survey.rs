@@ -6,7 +6,7 @@ use serde::Serialize;
 
 use super::measure::{MeasureOptions, project_reference};
 use super::plan::{Plan, RunPlan, SheetPlan};
-use super::run_error::RunProblem;
+use super::run_problem::RunProblem;
 use crate::frames::{Frame, RunFrames, ThermoSeries};
 use crate::sheet::{LONG_WAVES, ProjectionScratch, reference_frame_indices};
 
