@@ -1,6 +1,6 @@
 //! What can be wrong with the files of a run.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 use thiserror::Error;
 
@@ -233,4 +233,12 @@ pub enum FrameError {
         /// The message of the failure.
         reason: String,
     },
+}
+
+/// The error of a file that the system does not let be read.
+pub(super) fn unreadable(path: &Path, error: &std::io::Error) -> FrameError {
+    FrameError::Unreadable {
+        path: path.to_owned(),
+        reason: error.to_string(),
+    }
 }

@@ -11,6 +11,7 @@ use super::atom_order::AtomOrder;
 use super::dump_columns::{AtomRow, DumpColumns};
 use super::dump_header::{FrameHead, Header, HeaderError, read_header};
 use super::dump_table::{DumpTable, TableError};
+use super::error::unreadable;
 use super::source::FirstFrameWork;
 use super::text_file::TextFile;
 use super::time_table::TimeTable;
@@ -357,8 +358,4 @@ impl FrameSource for LammpsDumpSource {
     fn notes(&self) -> &[ReadNote] {
         &self.notes
     }
-}
-
-fn unreadable(path: &Path, error: &io::Error) -> FrameError {
-    super::reader::unreadable(path, error)
 }

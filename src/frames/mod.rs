@@ -36,6 +36,7 @@ mod thermo_xvg;
 mod time_table;
 mod topology;
 mod trajectory_writer;
+mod xtc;
 
 pub use cell::{Cell, CellAxis, cross, dot, length};
 pub use chemfiles_reader::ChemfilesSource;
@@ -51,3 +52,4 @@ pub use source::{FirstFrameWork, FrameSource, ReadOptions};
 pub use thermo::ThermoSeries;
 pub use time_table::TimeTable;
 pub use trajectory_writer::TrajectoryWriter;
+pub use xtc::XtcSource;

@@ -3,8 +3,10 @@
 use std::path::Path;
 
 use super::chemfiles_reader::ChemfilesSource;
+use super::error::unreadable;
 use super::lammps_dump::LammpsDumpSource;
 use super::text_file::first_bytes;
+use super::xtc::{XtcSource, is_xtc};
 use super::{FrameError, FrameSource, ReadOptions};
 
 /// Bytes of (unpacked) text looked at to tell formats by content.
@@ -22,13 +24,18 @@ struct Reader {
 }
 
 /// The readers, the first that takes a file opens it. Purpose-built readers stand before chemfiles, which takes the rest.
-const READERS: [Reader; 2] = [
+const READERS: [Reader; 3] = [
     // chemfiles' own reader of text dumps takes the bounds of a tilted box for its edges, and writes outside its memory
     // where the ids of the atoms exceed their number.
     Reader {
         extensions: || vec![".lammpstrj".to_owned(), ".dump".to_owned()],
         takes: |_, head| head.starts_with(b"ITEM:"),
         open: |path, options| Ok(Box::new(LammpsDumpSource::open(path, options)?)),
+    },
+    Reader {
+        extensions: || vec![".xtc".to_owned()],
+        takes: |_, head| is_xtc(head),
+        open: |path, options| Ok(Box::new(XtcSource::open(path, options)?)),
     },
     Reader {
         extensions: || {
@@ -102,13 +109,6 @@ pub(super) fn chemfiles_format(path: &Path, head: &[u8]) -> Result<String, Strin
         return Ok(format!("LAMMPS Data{compression}"));
     }
     chemfiles::guess_format(path).map_err(|error| error.message)
-}
-
-pub(super) fn unreadable(path: &Path, error: &std::io::Error) -> FrameError {
-    FrameError::Unreadable {
-        path: path.to_owned(),
-        reason: error.to_string(),
-    }
 }
 
 /// The error that lists what could be read.

@@ -2,9 +2,10 @@
 
 use std::path::Path;
 
+use super::error::unreadable;
 use super::text_file::TextFile;
 use super::thermo_quantity::Quantity;
-use super::{CellAxis, EngineUnits, FrameError, reader};
+use super::{CellAxis, EngineUnits, FrameError};
 use super::{thermo_cp2k, thermo_csv, thermo_lammps_log, thermo_xvg};
 
 /// The thermo series of a run, one value a written step. A quantity the file does not hold is `None`; those present all
@@ -37,14 +38,14 @@ impl ThermoSeries {
     /// Where the file cannot be read or is none of these, a number in it is malformed (with its line), a column has an unknown
     /// unit, or a log comes without `engine_units`.
     pub fn read(path: &Path, engine_units: Option<EngineUnits>) -> Result<Self, FrameError> {
-        let metadata = std::fs::metadata(path).map_err(|error| reader::unreadable(path, &error))?;
+        let metadata = std::fs::metadata(path).map_err(|error| unreadable(path, &error))?;
         if metadata.is_dir() {
             return Err(FrameError::Directory {
                 path: path.to_owned(),
                 expected: "thermo",
             });
         }
-        let text = read_text(path).map_err(|error| reader::unreadable(path, &error))?;
+        let text = read_text(path).map_err(|error| unreadable(path, &error))?;
         let unknown = |reason: &str| FrameError::UnknownThermo {
             path: path.to_owned(),
             reason: reason.to_owned(),

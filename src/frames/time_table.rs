@@ -19,6 +19,22 @@ pub enum TimeTable {
 }
 
 impl TimeTable {
+    /// The table of these times: one line where all lie on it (within [`tolerance`]), the times themselves otherwise.
+    #[must_use]
+    pub(super) fn of_times(times: Vec<f64>) -> Self {
+        let (Some(&first), Some(&last), true) = (times.first(), times.last(), times.len() > 1) else {
+            return Self::Listed(times);
+        };
+        let interval = (last - first) / (times.len() - 1) as f64;
+        let on_line = |(index, time): (usize, &f64)| {
+            (interval.mul_add(index as f64, first) - time).abs() <= tolerance(interval, *time)
+        };
+        if times.iter().enumerate().all(on_line) {
+            return Self::Even { first, interval };
+        }
+        Self::Listed(times)
+    }
+
     /// The time of frame `index` in ps.
     #[must_use]
     pub fn time(&self, index: usize) -> Option<f64> {

@@ -6,8 +6,9 @@ use std::path::{Path, PathBuf};
 use chemfiles::{Selection, Trajectory};
 
 use super::chemfiles_thread::take_warnings;
+use super::error::unreadable;
 use super::lammps_dump::{DumpAtom, LammpsDumpSource, frame_of};
-use super::reader::{chemfiles_format, unknown_format, unreadable};
+use super::reader::{chemfiles_format, unknown_format};
 use super::text_file::first_bytes;
 use super::{FrameError, FrameSource, ReadOptions, SheetAtoms};
 

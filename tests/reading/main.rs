@@ -9,3 +9,4 @@ mod files;
 mod formats;
 mod joining;
 mod refused;
+mod xtc;
