@@ -5,6 +5,7 @@
 //! | `about` | (bytes,) | JSON: format, key, facts of the sheet, times, names of series columns |
 //! | `modes`, `zone_weight` | (K, 2), (K,) | the integers of each mode, its weight in the first zone |
 //! | `block_frames` | (B,) | frames in each block |
+//! | `sites`, `cell` | (N, 3), (3, 3) | reference sites (scaled, scaled, height in A) and their mean cell in A, rows a, b, c |
 //! | `NAME.series` | (frames, columns) | the per-frame part of measurement NAME |
 //! | `NAME.height`, `.power`, `.power_squared`, `.lagged` | (B, modes) and (B, lags, modes) | its sums, block by block |
 
@@ -18,6 +19,7 @@ use serde::{Deserialize, Serialize};
 use thiserror::Error;
 
 use super::measure::{MeasuredRun, SheetFacts};
+use crate::frames::Cell;
 use crate::measurements::{BlockRecord, History, LAGS, ModeSums, Record, Series};
 use crate::sheet::ModeSet;
 
@@ -94,7 +96,33 @@ pub fn encode(run: &MeasuredRun, key: &str) -> Result<Vec<u8>, BlockStoreError> 
     writer.add_array("zone_weight", &Array1::from(history.modes.zone_weight.clone()))?;
     let frames: Vec<u64> = history.blocks.iter().map(|block| block.frames as u64).collect();
     writer.add_array("block_frames", &Array1::from(frames))?;
+    writer.add_array("sites", &rows_of(&run.sites))?;
+    writer.add_array("cell", &rows_of(&run.cell.vectors))?;
     Ok(writer.finish()?.into_inner())
+}
+
+/// Triples as the rows of an array.
+fn rows_of(triples: &[[f64; 3]]) -> Array2<f64> {
+    Array2::from_shape_fn((triples.len(), 3), |(row, column)| triples[row][column])
+}
+
+/// Triples from the rows of the array `name`.
+fn read_rows<R: Read + Seek>(
+    reader: &mut NpzReader<R>,
+    name: &str,
+) -> Result<Vec<[f64; 3]>, BlockStoreError> {
+    let array: Array2<f64> = reader.by_name(name)?;
+    if array.ncols() != 3 {
+        return Err(BlockStoreError::Shape(format!(
+            "{name} has {} columns, not 3",
+            array.ncols()
+        )));
+    }
+    Ok(array
+        .rows()
+        .into_iter()
+        .map(|row| [row[0], row[1], row[2]])
+        .collect())
 }
 
 /// Writes the arrays of the measurement that stands at `place` in every block.
@@ -175,9 +203,15 @@ pub fn decode<R: Read + Seek>(file: R, key: &str) -> Result<Option<MeasuredRun>,
         first_time_ps: about.first_time_ps,
         blocks,
     };
+    let vectors = read_rows(&mut reader, "cell")?;
+    let vectors = vectors
+        .try_into()
+        .map_err(|_| BlockStoreError::Shape("cell has not three rows".to_owned()))?;
     Ok(Some(MeasuredRun {
         history,
         facts: about.facts,
+        sites: read_rows(&mut reader, "sites")?,
+        cell: Cell { vectors },
     }))
 }
 
@@ -273,5 +307,68 @@ impl StoredSums {
                     .to_vec()
             }),
         }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Two blocks, the second a short one, with a series and sums.
+    fn sample() -> MeasuredRun {
+        let block = |frames: usize, seed: f64| {
+            let mut sums = ModeSums::zero(2);
+            sums.power = vec![seed, 2.0 * seed];
+            sums.height = vec![Complex64::new(seed, -1.0), Complex64::new(0.1, seed)];
+            sums.lagged[3][1] = Complex64::new(0.0, seed);
+            let values = (0..2 * frames).map(|k| seed + k as f64 / 7.0).collect();
+            BlockRecord {
+                frames,
+                records: vec![Record {
+                    measurement: "spectrum".to_owned(),
+                    series: Some(Series::from_rows(&["x", "y"], values)),
+                    sums: Some(sums),
+                }],
+            }
+        };
+        let modes = ModeSet {
+            integers: vec![[0, 1], [1, -1]],
+            zone_weight: vec![1.0, 1.0 / 3.0],
+        };
+        MeasuredRun {
+            history: History {
+                modes,
+                frame_interval_ps: Some(0.4),
+                first_time_ps: None,
+                blocks: vec![block(3, 0.1), block(1, 1e-300)],
+            },
+            facts: SheetFacts {
+                atoms: 2,
+                mass: Some(24.8),
+                planes: 1,
+                primitive_cells: None,
+                transform: "exact sum".to_owned(),
+                cell_height: 40.0,
+                frames_in_files: 4,
+                first_hop: None,
+                notes: vec!["a note".to_owned()],
+            },
+            sites: vec![[0.1, 0.2, 0.3], [0.4, 0.5, -0.6]],
+            cell: Cell {
+                vectors: [[10.0, 0.0, 0.0], [3.0, 9.0, 0.0], [0.0, 0.0, 40.0]],
+            },
+        }
+    }
+
+    #[test]
+    fn a_stored_run_comes_back_to_the_bit_under_its_key_only() {
+        let run = sample();
+        let bytes = encode(&run, "key").expect("encoded");
+        assert_eq!(decode(Cursor::new(&bytes), "key").expect("whole"), Some(run));
+        assert_eq!(decode(Cursor::new(&bytes), "other").expect("whole"), None);
+        assert!(
+            decode(Cursor::new(&bytes[..bytes.len() / 2]), "key").is_err(),
+            "half a file is none"
+        );
     }
 }

@@ -11,7 +11,7 @@ use super::measured_block::{BlockInProgress, BlockScratch, Fault, Outcome, measu
 use super::plan::Plan;
 use super::progress::Progress;
 use super::run_problem::RunProblem;
-use crate::frames::{Frame, RunFrames, RunInput, SheetAtoms};
+use crate::frames::{Cell, Frame, RunFrames, RunInput, SheetAtoms};
 use crate::measurements::History;
 use crate::sheet::{Positions, Projection, ProjectionScratch, reference_frame_indices};
 
@@ -45,6 +45,10 @@ pub struct MeasuredRun {
     pub history: History,
     /// The sheet behind them.
     pub facts: SheetFacts,
+    /// Mean (s1, s2, h) of each atom over the reference frames: scaled along a and b, height in A.
+    pub sites: Vec<[f64; 3]>,
+    /// Mean cell of the reference frames.
+    pub cell: Cell,
 }
 
 /// What is known of the sheet and its files after measuring.
@@ -140,7 +144,12 @@ pub fn measure_run(
         first_time_ps: frames.first_time_ps(),
         blocks: outcomes.into_iter().map(|outcome| outcome.record).collect(),
     };
-    Ok(MeasuredRun { history, facts })
+    Ok(MeasuredRun {
+        history,
+        facts,
+        sites: projection.reference().sites.clone(),
+        cell: projection.reference().cell,
+    })
 }
 
 /// Reads the reference frames and finds the sheet in them.
